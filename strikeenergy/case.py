@@ -1,0 +1,415 @@
+"""Case files: TOML in, a validated case out. All mistakes at once, each with its line.
+
+A case has a title, a ``[flash]`` (a named threat or strokes), ``[[object]]`` entries, and its own ``[materials]``.
+"""
+
+from __future__ import annotations
+
+import hashlib
+import os
+import tomllib
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass, field, replace
+from pathlib import Path
+from typing import Annotated, Any
+
+from pydantic import Field
+
+from strikeenergy.casetext import CaseError, locate, read_text, syntax_problem
+from strikeenergy.declared import validate
+from strikeenergy.errors import InputError, Problem, close_matches
+from strikeenergy.lightning.flash import Flash, Stroke
+from strikeenergy.lightning.threats import threat
+from strikeenergy.limits import DEFAULT_STANDARD, check_standard
+from strikeenergy.materials import PROPERTIES, Materials, material_names, own_material
+from strikeenergy.plugin import Part, StruckObject, Unit
+from strikeenergy.registry import Registry, load
+from strikeenergy.sources import Constant, Source, Standing
+from strikeenergy.units import Quantity
+
+__all__ = [
+    "Case",
+    "CaseError",
+    "FlashSection",
+    "StrokeEntry",
+    "load_case",
+    "locate",
+    "make_case",
+    "read_case",
+]
+
+
+class StrokeEntry(Part):
+    """One [[flash.stroke]]: whatever is known of it."""
+
+    name: str = ""
+    """What the stroke is called in the report."""
+    peak: Annotated[Quantity, Unit("kA", gt=0, typical=(5, 200), example="100 kA")] | None = None
+    """Peak current."""
+    charge: Annotated[Quantity, Unit("C", gt=0, typical=(1, 300), example="50 C")] | None = None
+    """Charge, the time integral of the current."""
+    specific_energy: (
+        Annotated[Quantity, Unit("J/ohm", gt=0, typical=(1e4, 1e7), example="2.5 MJ/ohm")] | None
+    ) = None
+    """Specific energy W/R, the time integral of the current squared."""
+    duration: Annotated[Quantity, Unit("s", gt=0, typical=(1e-4, 1), example="0.5 s")] | None = None
+    """Duration. More than 2 ms makes it a long stroke."""
+    polarity: str | int | None = None
+    """positive or negative: the sign of the charge brought to earth."""
+    start: Annotated[Quantity, Unit("s", ge=0, typical=(0, 1), example="40 ms")] | None = None
+    """When it begins, counted from the first stroke."""
+
+
+class FlashSection(Part):
+    """The [flash] of a case: a named threat, or the strokes."""
+
+    threat: str | None = None
+    """A named threat, such as "LPL I"; 'strikeenergy describe threats' lists them."""
+    stroke: Annotated[tuple[StrokeEntry, ...], Field(strict=False)] = ()
+    """The strokes in time order: [[flash.stroke]] entries."""
+
+
+@dataclass
+class Case:
+    """A validated case; SI inside.
+
+    Attributes:
+        title: what it is about.
+        flash: the lightning current.
+        objects: the struck objects, each with a name of its own.
+        standard: the standard whose verdicts decide.
+        sha256: of the text it was read from.
+        path: the file, or ``<stdin>``, or nothing.
+        registry: the plugins it was read with.
+        materials: the built-in and own materials.
+    """
+
+    title: str
+    flash: Flash
+    objects: list[StruckObject]
+    standard: str
+    sha256: str
+    registry: Registry
+    path: str = ""
+    materials: Materials = field(default_factory=Materials)
+
+    def __repr__(self) -> str:
+        return f"<Case {self.title!r}: {len(self.objects)} objects, {self.flash.name or 'given strokes'}>"
+
+
+# -- reading -----------------------------------------------------------------------------------------------
+
+
+def load_case(
+    path: str | os.PathLike[str], *, threat: str | None = None, standard: str | None = None
+) -> Case:
+    """Read a case file (``"-"`` for standard input).
+
+    Args:
+        path: of a TOML file.
+        threat: a named threat that takes the place of the case's flash.
+        standard: a standard that takes the place of the case's.
+
+    Raises:
+        CaseError: with every problem found.
+    """
+    text, name = read_text(path)
+    return read_case(text, name, threat=threat, standard=standard)
+
+
+def read_case(
+    text: str,
+    name: str = "<text>",
+    *,
+    threat: str | None = None,
+    standard: str | None = None,
+    registry: Registry | None = None,
+) -> Case:
+    """Read a case from TOML text. See :func:`load_case`.
+
+    Raises:
+        CaseError: with every problem found.
+    """
+    try:
+        data = tomllib.loads(text)
+    except tomllib.TOMLDecodeError as error:
+        raise CaseError([syntax_problem(text, name, error)]) from None
+    except RecursionError:
+        raise CaseError([Problem("the brackets are nested too deeply for a case file", place=name)]) from None
+    digest = hashlib.sha256(text.encode()).hexdigest()
+    try:
+        return _build(data, digest, name, threat, standard, registry)
+    except CaseError as error:
+        raise CaseError([_placed(problem, text, name, data) for problem in error.problems]) from None
+
+
+def make_case(data: Mapping[str, Any], *, registry: Registry | None = None) -> Case:
+    """Make a case of a mapping with the same keys as a case file. Values may be texts or pint quantities (also arrays).
+
+    Raises:
+        CaseError: with every problem found.
+    """
+    digest = hashlib.sha256(repr(sorted(data.items(), key=str)).encode()).hexdigest()
+    return _build(data, digest, "", None, None, registry)
+
+
+# -- building ----------------------------------------------------------------------------------------------
+
+_TOP = {"title", "standard", "flash", "object", "materials"}
+
+
+def _build(
+    data: Mapping[str, Any],
+    digest: str,
+    name: str,
+    threat_name: str | None,
+    standard: str | None,
+    registry: Registry | None,
+) -> Case:
+    registry = registry or load()
+    problems: list[Problem] = []
+    for key in data:
+        if key not in _TOP:
+            problems.append(Problem("unknown key", close_matches(key, _TOP), (key,)))
+    title = data.get("title", "")
+    if not isinstance(title, str):
+        problems.append(Problem("the title is a text", 'write title = "..."', ("title",)))
+        title = ""
+    chosen = standard or data.get("standard", DEFAULT_STANDARD)
+    try:
+        chosen = check_standard(str(chosen), registry)
+    except InputError as error:
+        problems += [replace(p, path=("standard",)) for p in error.problems]
+    materials = _materials(data.get("materials", {}), problems)
+    flash = _flash(data.get("flash"), threat_name, problems)
+    objects = _objects(data.get("object"), registry, materials, problems)
+    if problems or flash is None:
+        raise CaseError(problems)
+    return Case(
+        title or Path(name).stem or "untitled", flash, objects, str(chosen), digest, registry, name, materials
+    )
+
+
+def _table(
+    value: Any, path: tuple[str | int, ...], problems: list[Problem], write: str
+) -> Mapping[str, Any] | None:
+    if isinstance(value, Mapping):
+        return value
+    problems.append(Problem("a table is due here", write, path))
+    return None
+
+
+def _materials(data: Any, problems: list[Problem]) -> Materials:
+    own: dict[str, dict[str, Constant]] = {}
+    families: dict[str, str] = {}
+    table = _table(data, ("materials",), problems, 'write [materials."my alloy"]') or {}
+    for name, entries in table.items():
+        path = ("materials", name)
+        row = _table(entries, path, problems, f'write [materials."{name}"] and its properties below')
+        if row is None:
+            continue
+        found: dict[str, tuple[Any, Source, Standing]] = {}
+        for key, entry in row.items():
+            if key == "family":
+                families[name] = str(entry)
+                if entry not in material_names():
+                    problems.append(
+                        Problem(
+                            f"unknown material {entry!r}",
+                            close_matches(str(entry), material_names()),
+                            (*path, key),
+                        )
+                    )
+            elif key not in PROPERTIES:
+                problems.append(
+                    Problem("unknown property", close_matches(key, [*PROPERTIES, "family"]), (*path, key))
+                )
+            else:
+                value, source = _own_value(entry, (*path, key), PROPERTIES[key][0], problems)
+                if value is not None:
+                    found[key] = (value, Source("own", source), Standing.GIVEN)
+        usable = {}
+        for key, item in found.items():
+            try:
+                own_material(name, {key: item})
+            except InputError as error:
+                problems += [replace(p, path=(*path, key)) for p in error.problems]
+            else:
+                usable[key] = item
+        own[name] = own_material(name, usable)
+        for key, constant in own[name].items():
+            if constant.value < 0 or (constant.value == 0 and key != "temperature_coefficient"):
+                problems.append(
+                    Problem(f"{PROPERTIES[key][1]} must be above 0", "check the value", (*path, key))
+                )
+    return Materials(own, families)
+
+
+def _own_value(
+    entry: Any, path: tuple[str | int, ...], unit: str, problems: list[Problem]
+) -> tuple[Any, str]:
+    """Return value text and source of a property of an own material."""
+    write = f'write {path[-1]} = {{ value = "1 {unit}", source = "where it comes from" }}'.replace(
+        "1 }", "1 }"
+    )
+    if not isinstance(entry, Mapping):
+        problems.append(
+            Problem(
+                "value and source are due: a verdict never rests on a number without a source", write, path
+            )
+        )
+        return None, ""
+    for key in entry:
+        if key not in ("value", "unit", "source"):
+            problems.append(
+                Problem("unknown key", close_matches(key, ("value", "unit", "source")), (*path, key))
+            )
+    source = entry.get("source")
+    value = entry.get("value")
+    if not isinstance(source, str) or not source.strip():
+        problems.append(Problem("the source is missing", write, path))
+    if "unit" in entry and isinstance(value, (int, float)) and not isinstance(value, bool):
+        value = f"{value!r} {entry['unit']}"
+    if value is None:
+        problems.append(Problem("the value is missing", write, path))
+    return value, str(source or "")
+
+
+def _flash(data: Any, threat_name: str | None, problems: list[Problem]) -> Flash | None:
+    write = 'write [flash] and threat = "LPL I" below it, or [[flash.stroke]] entries'
+    if threat_name is not None:
+        try:
+            return threat(threat_name)
+        except InputError as error:
+            problems += error.problems
+            return None
+    if data is None:
+        problems.append(Problem("the flash is missing", write))
+        return None
+    table = _table(data, ("flash",), problems, write)
+    if table is None:
+        return None
+    section = validate(FlashSection, table, ("flash",), {}, problems)
+    if section is None:
+        return None
+    if section.threat is not None and section.stroke:
+        problems.append(Problem("threat and strokes are both given", "give one of them", ("flash", "threat")))
+        return None
+    if section.threat is not None:
+        try:
+            return threat(section.threat)
+        except InputError as error:
+            problems += [replace(p, path=("flash", "threat")) for p in error.problems]
+            return None
+    strokes = []
+    for number, entry in enumerate(section.stroke):
+        path = ("flash", "stroke", number)
+        polarity = _polarity(entry.polarity, (*path, "polarity"), problems)
+        values = entry.model_dump(exclude={"polarity"})
+        if all(values[key] is None for key in ("peak", "charge", "specific_energy")):
+            problems.append(
+                Problem(
+                    "the stroke has no peak, charge or specific energy", "give at least one of them", path
+                )
+            )
+        try:
+            strokes.append(Stroke(**values, polarity=polarity))
+        except InputError as error:
+            problems += [replace(p, path=(*path, *p.path)) for p in error.problems]
+    if not section.stroke:
+        problems.append(Problem("the flash is empty", write, ("flash",)))
+    return Flash(tuple(strokes)) if strokes else None
+
+
+_POLARITIES = {"positive": 1, "negative": -1, "+": 1, "-": -1, 1: 1, -1: -1, "+1": 1, "-1": -1, "1": 1}
+
+
+def _polarity(value: str | int | None, path: tuple[str | int, ...], problems: list[Problem]) -> int | None:
+    if value is None or value in _POLARITIES:
+        return None if value is None else _POLARITIES[value]
+    problems.append(Problem(f"unknown polarity {value!r}", "write 'positive' or 'negative'", path))
+    return None
+
+
+def _objects(
+    data: Any, registry: Registry, materials: Materials, problems: list[Problem]
+) -> list[StruckObject]:
+    kinds = ", ".join(registry.kinds)
+    write = f"write [[object]] and kind = one of {kinds}"
+    if data is None or data == []:
+        problems.append(Problem("no object is given", write))
+        return []
+    if isinstance(data, Mapping) or not isinstance(data, Sequence) or isinstance(data, str):
+        problems.append(Problem("objects are a list", "write [[object]] with two brackets", ("object",)))
+        return []
+    out: list[StruckObject] = []
+    seen: dict[str, int] = {}
+    for number, entry in enumerate(data):
+        path: tuple[str | int, ...] = ("object", number)
+        table = _table(entry, path, problems, "write [[object]]")
+        if table is None:
+            continue
+        name = table.get("name")
+        if isinstance(name, str) and name.strip():
+            if name in seen:
+                problems.append(
+                    Problem(
+                        f"the name {name!r} is that of object {seen[name] + 1} as well",
+                        "give each object a name of its own",
+                        (*path, "name"),
+                    )
+                )
+            seen.setdefault(name, number)
+        thing = _object(table, number, path, registry, materials, problems)
+        if thing is not None:
+            out.append(thing)
+    return out
+
+
+def _object(
+    table: Mapping[str, Any],
+    number: int,
+    path: tuple[str | int, ...],
+    registry: Registry,
+    materials: Materials,
+    problems: list[Problem],
+) -> StruckObject | None:
+    if "kind" not in table:
+        problems.append(
+            Problem(
+                "the kind is missing", f"write kind = one of {', '.join(map(repr, registry.kinds))}", path
+            )
+        )
+        return None
+    try:
+        kind = registry.kind(str(table["kind"]))
+    except InputError as error:
+        problems += [replace(p, path=(*path, "kind")) for p in error.problems]
+        return None
+    named = dict(table)
+    if not str(named.get("name", "")).strip():
+        named["name"] = f"{table['kind']} {number + 1}"
+    context = {"materials": materials, "collect": True}
+    thing = validate(kind, named, path, context, problems)
+    problems += [replace(p, path=(*path, *p.path)) for p in kind.missing_or_extra(table.keys())]
+    if thing is not None and not list(kind.missing_or_extra(table.keys())):
+        problems += [replace(p, path=(*path, *p.path)) for p in thing.check()]
+    return thing
+
+
+# -- lines -------------------------------------------------------------------------------------------------
+
+
+def _placed(problem: Problem, text: str, name: str, data: Mapping[str, Any]) -> Problem:
+    line = locate(text, problem.path)
+    return replace(problem, place=f"{name}:{line}", path=_with_name(problem.path, data))
+
+
+def _with_name(path: tuple[Any, ...], data: Mapping[str, Any]) -> tuple[str | int, ...]:
+    """Put the object's name beside its number: ``object 2 (ridge sheet).thickness``."""
+    if len(path) < 2 or path[0] != "object" or not isinstance(path[1], int):
+        return path
+    entry = data["object"][path[1]]
+    name = entry.get("name") if isinstance(entry, Mapping) else None
+    first = f"object {path[1] + 1}" + (f" ({name})" if isinstance(name, str) and name else "")
+    return (first, *path[2:])

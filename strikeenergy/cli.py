@@ -1,0 +1,267 @@
+"""The command line. Imports click and nothing heavy: each command brings in what it needs when it runs."""
+
+from __future__ import annotations
+
+import os
+import sys
+import traceback
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+import click
+
+from strikeenergy import __version__
+from strikeenergy.errors import ExitCode, StrikeEnergyError
+
+if TYPE_CHECKING:
+    from strikeenergy.errors import PluginError
+    from strikeenergy.registry import Registry
+
+__all__ = ["main", "run"]
+
+
+class _Group(click.Group):
+    """Lists commands in the order of a first visit, and says what was perhaps meant."""
+
+    def list_commands(self, ctx: click.Context) -> list[str]:
+        return list(self.commands)
+
+
+@click.group(cls=_Group, context_settings={"help_option_names": ["-h", "--help"], "max_content_width": 100})
+@click.version_option(__version__, message="%(prog)s %(version)s", prog_name="strikeenergy")
+def main() -> None:
+    """What a lightning current does to the thing it strikes, in numbers that can be checked.
+
+    \b
+    Begin with
+      strikeenergy new conductor -o part.toml
+      strikeenergy estimate part.toml
+
+    An estimate, not a design approval: local codes and the authority having jurisdiction come first.
+    Nothing is sent anywhere: the program uses no network.
+    """
+
+
+def run(arguments: list[str] | None = None) -> int:
+    """Run the command line and return the exit code. The one place where errors become codes."""
+    for stream in (sys.stdout, sys.stderr):
+        reconfigure = getattr(stream, "reconfigure", None)
+        if reconfigure is not None:  # a redirected stream may have another encoding, which has no Ω
+            reconfigure(encoding="utf-8")
+    try:
+        value = main.main(args=arguments, prog_name="strikeenergy", standalone_mode=False)
+        return int(value) if isinstance(value, int) else int(ExitCode.OK)
+    except click.exceptions.Exit as stop:
+        return stop.exit_code
+    except click.Abort:
+        click.echo("Interrupted.", err=True)
+        return 130
+    except click.ClickException as error:
+        error.show()
+        return error.exit_code
+    except StrikeEnergyError as error:
+        click.echo(str(error), err=True)
+        return int(error.exit_code)
+    except BrokenPipeError:  # the reader has gone, as with "| head"
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+        return int(ExitCode.OK)
+    except KeyboardInterrupt:
+        click.echo("Interrupted.", err=True)
+        return 130
+    except Exception as error:
+        if os.environ.get("STRIKEENERGY_TRACEBACK"):
+            traceback.print_exc()
+        click.echo(
+            f"This is a fault of the program, not of your input: {type(error).__name__}: {error}\n"
+            "Set STRIKEENERGY_TRACEBACK=1 and run it again for the details to report.",
+            err=True,
+        )
+        return int(ExitCode.FAULT)
+
+
+def _show_failures(failures: list[PluginError]) -> None:
+    for failure in failures:
+        click.echo(f"warning: {failure}", err=True)
+
+
+def _write(text: str, output: str | None, force: bool = False) -> None:
+    """Write to standard output, or to a file: whole or not at all."""
+    if output is None or output == "-":
+        click.echo(text, nl=False)
+        return
+    target = Path(output)
+    if target.exists() and not force:
+        raise click.UsageError(f"{output} exists; name another file or give --force")
+    beside = target.with_name(target.name + ".part")
+    try:
+        beside.write_text(text, encoding="utf-8")
+        beside.replace(target)
+    except OSError as error:
+        beside.unlink(missing_ok=True)
+        raise click.UsageError(f"{output} cannot be written: {error.strerror or error}") from None
+
+
+@main.command()
+@click.argument("case", metavar="CASE")
+@click.option("--text", "form", flag_value="text", help="For people (the default on a terminal).")
+@click.option("--json", "form", flag_value="json", help="One JSON object in SI units, keys sorted.")
+@click.option("--csv", "form", flag_value="csv", help="One record a line (the default when piped).")
+@click.option(
+    "--notes", is_flag=True, help="The calculation notes as well: formulas, values put in, sources."
+)
+@click.option("--threat", metavar="NAME", help="Take this threat instead of the flash of the case.")
+@click.option("--standard", metavar="NAME", help="The standard that decides, instead of that of the case.")
+@click.option("--strict-plugins", is_flag=True, help="Stop at once if a plugin failed to load.")
+def estimate(
+    case: str, form: str | None, notes: bool, threat: str | None, standard: str | None, strict_plugins: bool
+) -> int:
+    """Estimate what the flash of a CASE does to each of its objects, and judge it.
+
+    CASE is a TOML file, or - for standard input.
+
+    \b
+    Exit codes: 0 nothing falls short, 1 something falls short, 2 misused, 3 input refused,
+    4 no model covers it, 5 a plugin failed (the rest stands), 70 a fault of the program.
+
+    \b
+    Examples:
+      strikeenergy estimate cases/boathouse.toml --text
+      strikeenergy estimate cases/boathouse.toml --threat "LPL II" --json
+    """
+    from strikeenergy import case as cases
+    from strikeenergy import engine
+
+    loaded = cases.load_case(case, threat=threat, standard=standard)
+    if strict_plugins and loaded.registry.failures:
+        raise loaded.registry.failures[0]
+    result = engine.estimate(loaded)
+    form = form or ("text" if sys.stdout.isatty() or notes else "csv")
+    if form == "json":
+        from strikeenergy.report.machine import to_json
+
+        data = result.to_dict()
+        if notes:
+            from strikeenergy.report.text import notes_text
+
+            data["notes"] = notes_text(result).splitlines()
+        _write(to_json(data), None)
+    elif form == "csv":
+        from strikeenergy.report.machine import to_csv
+
+        _write(to_csv(result), None)
+    else:
+        from strikeenergy.report.terminal import show
+        from strikeenergy.report.text import estimate_text, notes_text
+
+        show(estimate_text(result))
+        if notes:
+            show("\n" + notes_text(result))
+    if notes and form == "csv":
+        raise click.UsageError("--notes goes with --text or --json")
+    _show_failures(result.all_failures)
+    return int(result.exit_code)
+
+
+@main.command()
+@click.argument("kind", metavar="KIND")
+@click.option("-o", "--output", metavar="FILE", help="Write to a file (UTF-8) instead of standard output.")
+@click.option("--force", is_flag=True, help="Replace the file if it exists.")
+def new(kind: str, output: str | None, force: bool) -> int:
+    """Write a commented case with one object of a KIND, to start from.
+
+    \b
+    Examples:
+      strikeenergy new conductor
+      strikeenergy new sheet -o sheet.toml
+    """
+    from strikeenergy.describe import new_case
+    from strikeenergy.registry import load
+
+    registry = load()
+    _show_failures(registry.failures)
+    _write(new_case(registry, kind), output, force)
+    if output not in (None, "-"):
+        click.echo(f"Wrote {output}. Next: strikeenergy estimate {output}", err=True)
+    return _load_code(registry)
+
+
+@main.command()
+@click.argument("subject", required=False, default="", metavar="[SUBJECT]")
+@click.argument("name", required=False, default="", metavar="[NAME]")
+@click.option("--json", "as_json", is_flag=True, help="One JSON object instead of text.")
+def describe(subject: str, name: str, as_json: bool) -> int:
+    """Describe what the program knows, with the source and standing of each number.
+
+    \b
+    SUBJECT is kinds, materials, threats, tables, standards or sources; a KIND; or
+    kind, material, threat, table with a NAME.
+
+    \b
+    Examples:
+      strikeenergy describe
+      strikeenergy describe conductor
+      strikeenergy describe material copper
+      strikeenergy describe threat "LPL I"
+      strikeenergy describe table "IEC 62305-3:2010 Table 6"
+    """
+    from strikeenergy.describe import describe as told
+    from strikeenergy.registry import load
+    from strikeenergy.report.machine import to_json
+    from strikeenergy.report.terminal import show
+
+    registry = load()
+    _show_failures(registry.failures)
+    pages = told(registry, subject, name)
+    if as_json:
+        _write(to_json({"schema_version": 1, "sections": [page.to_dict() for page in pages]}), None)
+    else:
+        show("\n".join(page.text() for page in pages))
+    return _load_code(registry)
+
+
+@main.command()
+@click.option("-o", "--output", metavar="FILE", help="Write to a file instead of standard output.")
+@click.option("--force", is_flag=True, help="Replace the file if it exists.")
+def schema(output: str | None, force: bool) -> int:
+    """Write the JSON schema of case files, for completion and checks in an editor.
+
+    Put it beside your cases as strikeenergy-case.schema.json: the first line of every new case names it.
+
+    \b
+    Example:
+      strikeenergy schema -o strikeenergy-case.schema.json
+    """
+    from strikeenergy.describe import case_schema
+    from strikeenergy.registry import load
+    from strikeenergy.report.machine import to_json
+
+    registry = load()
+    _show_failures(registry.failures)
+    _write(to_json(case_schema(registry)), output, force)
+    return _load_code(registry)
+
+
+@main.command()
+@click.option("--json", "as_json", is_flag=True, help="One JSON object instead of text.")
+def plugins(as_json: bool) -> int:
+    """List what is installed, from which distribution, and what failed and where.
+
+    \b
+    Example:
+      strikeenergy plugins
+    """
+    from strikeenergy.describe import plugin_data, plugin_pages
+    from strikeenergy.registry import load
+    from strikeenergy.report.machine import to_json
+    from strikeenergy.report.terminal import show
+
+    registry = load()
+    if as_json:
+        _write(to_json(plugin_data(registry)), None)
+    else:
+        show("\n".join(page.text() for page in plugin_pages(registry)))
+    return _load_code(registry)
+
+
+def _load_code(registry: Registry) -> int:
+    return int(ExitCode.PLUGIN if registry.failures else ExitCode.OK)

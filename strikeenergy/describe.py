@@ -1,0 +1,489 @@
+"""What the program knows: kinds, materials, threats, tables, each with source and standing; a case to start from."""
+
+from __future__ import annotations
+
+import textwrap
+from collections.abc import Iterable
+from dataclasses import dataclass, field
+from typing import Any, get_args
+
+from strikeenergy.case import FlashSection
+from strikeenergy.errors import UnknownName
+from strikeenergy.lightning.threats import COMPONENTS, levels, threat, threat_names
+from strikeenergy.limits import DEFAULT_STANDARD, LimitTable, Row, limit_tables, standards
+from strikeenergy.materials import PROPERTIES, Materials, material_names, sets
+from strikeenergy.plugin import Effect, Part, StruckObject, default_text, unit_of
+from strikeenergy.registry import Registry, kind_name
+from strikeenergy.sources import Constant, sources
+from strikeenergy.units import dimension_name, format_quantity, pretty
+
+__all__ = ["Page", "case_schema", "describe", "new_case", "plugin_data", "plugin_pages"]
+
+_SUBJECTS = ("kinds", "materials", "threats", "tables", "standards", "sources")
+_WIDTH = 80
+
+
+@dataclass
+class Page:
+    """A titled list of entries; each entry has a name and what is to be said of it."""
+
+    title: str
+    entries: list[tuple[str, str]] = field(default_factory=list)
+    intro: str = ""
+
+    def text(self) -> str:
+        """Return it for people."""
+        lines = [self.title, "-" * min(len(self.title), _WIDTH)]
+        lines += textwrap.wrap(self.intro, _WIDTH) if self.intro else []
+        width = min(max((len(name) for name, _ in self.entries), default=0), 28)
+        for name, said in self.entries:
+            first = f"  {name:<{width}}  "
+            rest = " " * (width + 4)
+            if len(name) > width:
+                lines.append(f"  {name}")
+                first = rest
+            lines += textwrap.wrap(
+                said, _WIDTH, initial_indent=first, subsequent_indent=rest, break_on_hyphens=False
+            ) or [first.rstrip()]
+        return "\n".join(lines) + "\n"
+
+    def to_dict(self) -> dict[str, Any]:
+        """Return it for JSON."""
+        return {
+            "title": self.title,
+            "intro": self.intro,
+            "entries": [{"name": n, "text": t} for n, t in self.entries],
+        }
+
+
+def describe(registry: Registry, subject: str = "", name: str = "") -> list[Page]:
+    """Describe a subject, or one thing of it.
+
+    Raises:
+        UnknownName: no such subject or name, with the nearest ones.
+    """
+    several = {
+        "kinds": _kinds,
+        "materials": _materials,
+        "threats": _threats,
+        "tables": _tables,
+        "standards": _standards,
+        "sources": _sources,
+    }
+    one = {"kind": _kind, "material": _material, "threat": _threat, "table": _table}
+    if not subject:
+        return [*_kinds(registry), *_overview(registry)]
+    if subject in several and not name:
+        return several[subject](registry)
+    plural = {"kinds": "kind", "materials": "material", "threats": "threat", "tables": "table"}
+    subject = plural.get(subject, subject) if name else subject
+    if subject in one:
+        return one[subject](registry, name) if name else several[subject + "s"](registry)
+    if subject in registry.kinds and not name:
+        return _kind(registry, subject)
+    raise UnknownName("subject", subject, [*registry.kinds, *_SUBJECTS, *one])
+
+
+def _overview(registry: Registry) -> list[Page]:
+    lines = [
+        ("describe KIND", "inputs, effects and findings of a kind, such as 'describe conductor'"),
+        ("describe materials", f"{len(material_names())} materials in {len(sets())} constant sets"),
+        ("describe threats", f"{len(threat_names())} named threats"),
+        ("describe tables", f"{len(limit_tables(registry))} tables of minimum sizes"),
+        ("describe sources", f"{len(sources())} publications that the numbers rest on"),
+        ("new KIND", "a commented case to start from"),
+    ]
+    return [Page("What else can be asked", lines)]
+
+
+def _kinds(registry: Registry) -> list[Page]:
+    entries = []
+    for name, kind in registry.kinds.items():
+        effects = ", ".join(effect.name for effect in registry.effects_of(kind))
+        owner = registry.owners[f"kind {name}"]
+        entries.append(
+            (name, f"{_summary(kind)}. Effects: {effects}. From {owner.distribution} {owner.version}.")
+        )
+    return [Page("Kinds of struck object", entries)]
+
+
+def _summary(kind: type[StruckObject]) -> str:
+    return kind.summary or (kind.__doc__ or "").strip().split("\n")[0].rstrip(".")
+
+
+def _kind(registry: Registry, name: str) -> list[Page]:
+    kind = registry.kind(name)
+    pages = [Page(f"{name}: inputs", list(_fields(kind)), (kind.__doc__ or "").strip())]
+    pages += [Page(f"{name}.{part}: inputs", list(_fields(model))) for part, model in _parts(kind)]
+    if kind.uses:
+        pages.append(Page(f"{name}: what use may be", list(kind.uses.items())))
+    for effect in registry.effects_of(kind):
+        pages.append(_effect(registry, effect))
+    return pages
+
+
+def _effect(registry: Registry, effect: Effect) -> Page:
+    owner = registry.owner_of(effect)
+    entries = []
+    for finding, declared in effect.findings.items():
+        unit = "word" if declared.unit is None else pretty(declared.unit) or "1"
+        bound = f" ({declared.bound} bound)" if declared.bound else ""
+        entries.append((finding, f"{declared.meaning}{bound} [{unit}]"))
+    for label, texts in (
+        ("rises with", effect.rises_with),
+        ("falls with", effect.falls_with),
+        ("valid for", [validity.text for validity in effect.validity]),
+        ("leaves out", effect.leaves_out),
+        ("criteria", [f"{c.check}: {c.value} against {c.limit} ({c.clause})" for c in effect.criteria]),
+        ("sources", [str(source) for source in effect.sources]),
+    ):
+        if texts:
+            entries.append((f"· {label}", "; ".join(texts)))
+    return Page(
+        f"{kind_name(effect.kind)}: effect {effect.name}",
+        entries,
+        f"{effect.summary} From {owner.distribution} {owner.version}.",
+    )
+
+
+def _fields(model: type[Part]) -> Iterable[tuple[str, str]]:
+    for name, info in model.model_fields.items():
+        if name == "kind":
+            continue
+        said = [(info.description or "").strip().rstrip(".")]
+        mark = unit_of(model, name)
+        if mark is not None:
+            said.append(
+                f"{dimension_name(mark.unit)}{', ' + mark.range_text if mark.range_text else ''}; such as {mark.text!r}"
+            )
+        words = _words(info.annotation)
+        if words:
+            said.append(f"one of {', '.join(map(repr, words))}")
+        default = default_text(model, name)
+        if default:
+            said.append(f"default {default}")
+        elif info.is_required():
+            said.append("required")
+        yield name, ". ".join(said) + "."
+
+
+def _words(annotation: Any) -> tuple[str, ...]:
+    arguments = get_args(annotation)
+    if arguments and all(isinstance(a, str) for a in arguments):
+        return arguments
+    return next((words for a in arguments if (words := _words(a))), ())
+
+
+def _parts(model: type[Part]) -> Iterable[tuple[str, type[Part]]]:
+    for name, info in model.model_fields.items():
+        for candidate in _models(info.annotation):
+            yield name, candidate
+
+
+def _models(annotation: Any) -> Iterable[type[Part]]:
+    if isinstance(annotation, type) and issubclass(annotation, Part):
+        yield annotation
+    for argument in get_args(annotation):
+        yield from _models(argument)
+
+
+def _constant(value: Constant) -> str:
+    shown = "degC" if value.unit == "K" and value.value > 200 else None
+    return f"{format_quantity(value.value, value.unit, shown)}  ({value.source.locator or value.source.citation}; {value.standing})"
+
+
+def _materials(registry: Registry) -> list[Page]:
+    known = Materials()
+    entries = []
+    for name in material_names():
+        having = [s for s in sets() if known.get(name, s).properties]
+        entries.append(
+            (
+                name,
+                "constants in " + ", ".join(having)
+                if having
+                else "no constants; rows of the limit tables only",
+            )
+        )
+    pages = [Page("Materials", entries)]
+    pages.append(
+        Page(
+            "Constant sets",
+            [(s.name, s.note) for s in sets().values()],
+            "One calculation takes all constants of a material from one set.",
+        )
+    )
+    pages.append(
+        Page(
+            "Properties that an own material may give",
+            [(n, f"{meaning} [{pretty(unit) or '1'}]") for n, (unit, meaning) in PROPERTIES.items()],
+        )
+    )
+    return pages
+
+
+def _material(registry: Registry, name: str) -> list[Page]:
+    known = Materials()
+    canonical = known.canonical(name)
+    pages = []
+    for set_name in sets():
+        material = known.get(canonical, set_name)
+        if material.properties:
+            entries = [(key, _constant(value)) for key, value in material.properties.items()]
+            citation = next(iter(material.properties.values())).source.citation
+            intro = ". ".join([*material.remarks, f"Source: {citation}"])
+            pages.append(Page(f"{canonical} in {set_name}", entries, intro))
+    return pages or [Page(canonical, [], "No constant set has it; the limit tables have rows for it.")]
+
+
+def _threats(registry: Registry) -> list[Page]:
+    entries = [(name, repr(threat(name)).strip("<>").split(": ", 1)[1]) for name in levels()]
+    parts = [
+        (f"LPL I {part}", repr(threat(f"LPL I {part}")).strip("<>").split(": ", 1)[1]) for part in COMPONENTS
+    ]
+    return [
+        Page("Threats", entries, "Protection levels: the first positive impulse and the long stroke."),
+        Page("Components (the same for each level)", parts),
+    ]
+
+
+def _threat(registry: Registry, name: str) -> list[Page]:
+    flash = threat(name)
+    level = next(known for known in levels() if flash.name == known or flash.name.startswith(known + " "))
+    pages = []
+    for part, component in levels()[level].items():
+        if flash.name in (level, f"{level} {part}"):
+            entries = [(key, _constant(value)) for key, value in component.values.items()]
+            if component.shape:
+                entries.append(("shape T1/T2", f"{component.shape} µs"))
+            title = "flash totals" if part == "flash" else part
+            pages.append(Page(f"{level}: {title}", entries))
+    pages[0].intro = " ".join([f"Source: {flash.source}.", *(f"{remark}." for remark in flash.remarks)])
+    return pages
+
+
+def _tables(registry: Registry) -> list[Page]:
+    entries = [
+        (table.name, f"{table.title} ({sum(len(c.rows) for c in table.checks)} rows)")
+        for table in limit_tables(registry)
+    ]
+    return [Page("Tables of minimum sizes", entries), *_standards(registry)]
+
+
+def _standards(registry: Registry) -> list[Page]:
+    entries = [
+        (
+            name,
+            "decides unless the case says otherwise"
+            if name == DEFAULT_STANDARD
+            else "for comparison, or with standard = ...",
+        )
+        for name in standards(registry)
+    ]
+    return [Page("Standards that a case may name", entries)]
+
+
+def _table(registry: Registry, name: str) -> list[Page]:
+    known = {table.name: table for table in limit_tables(registry)}
+    folded = {key.casefold(): key for key in known}
+    if name.casefold() not in folded:
+        raise UnknownName("table", name, known)
+    table = known[folded[name.casefold()]]
+    return [_check_page(table, number) for number in range(len(table.checks))]
+
+
+def _check_page(table: LimitTable, number: int) -> Page:
+    check = table.checks[number]
+    entries = []
+    for row in check.rows:
+        label = ", ".join(filter(None, (" or ".join(row.materials), " or ".join(row.forms))))
+        entries.append((label, _row(row)))
+    intro = f"{table.title}. For use: {', '.join(table.uses)}. {check.say} {table.remark}".strip()
+    return Page(f"{table.name}: {check.name}", entries, " ".join(intro.split()))
+
+
+def _row(row: Row) -> str:
+    show = "mm**2" if row.quantity == "section" else "mm"
+    said = [
+        f"{row.quantity} {format_quantity(row.minimum.value, row.minimum.unit, show)} ({row.minimum.standing})"
+    ]
+    said += [variant.say for variant in row.variants]
+    return "; ".join([*said, *filter(None, (row.say, row.only_when_say))])
+
+
+def _sources(registry: Registry) -> list[Page]:
+    return [Page("Publications", [(key, source.citation) for key, source in sorted(sources().items())])]
+
+
+# -- plugins -----------------------------------------------------------------------------------------------
+
+
+def plugin_data(registry: Registry) -> dict[str, Any]:
+    """Return what is installed and what failed, for JSON."""
+    from strikeenergy.results import failure_dict
+
+    return {
+        "schema_version": 1,
+        "plugins": [
+            {
+                "name": p.name,
+                "module": p.module,
+                "distribution": p.distribution,
+                "version": p.version,
+                "kinds": list(p.kinds),
+                "effects": list(p.effects),
+                "tables": list(p.tables),
+            }
+            for p in registry.plugins
+        ],
+        "failures": [failure_dict(failure) for failure in registry.failures],
+    }
+
+
+def plugin_pages(registry: Registry) -> list[Page]:
+    """Return what is installed and what failed, for people."""
+    entries = []
+    for p in registry.plugins:
+        brings = [f"kinds {', '.join(p.kinds)}"] if p.kinds else []
+        brings += [f"effects {', '.join(p.effects)}"] if p.effects else []
+        brings += [f"tables {', '.join(p.tables)}"] if p.tables else []
+        entries.append(
+            (p.name, f"{p.distribution} {p.version}, module {p.module}: {'; '.join(brings) or 'nothing'}")
+        )
+    pages = [Page("Plugins", entries)]
+    if registry.failures:
+        failed = [(f.plugin, f"{f.distribution}: failed to {f.stage}: {f.reason}") for f in registry.failures]
+        pages.append(Page("FAILED", failed))
+    return pages
+
+
+# -- a case to start from, and the schema --------------------------------------------------------------------
+
+
+def new_case(registry: Registry, name: str) -> str:
+    """Write a commented case with one object of a kind. It runs as it stands.
+
+    Raises:
+        UnknownName: no such kind.
+    """
+    kind = registry.kind(name)
+    lines = [
+        "#:schema ./strikeenergy-case.schema.json",
+        "# Lines that begin with '# ' and a key are what else may be said; take the '# ' away to use one.",
+        'title = "My case"',
+        "# standard = " + " | ".join(f'"{s}"' for s in standards(registry)),
+        "",
+        "[flash]",
+        'threat = "LPL I"        # or the strokes themselves:',
+        "# [[flash.stroke]]",
+        *(f"# {line}" for line in _example_lines(_stroke_model(), {}, True)),
+        "",
+        "[[object]]",
+        f'kind = "{name}"',
+        f'name = "my {name}"',
+    ]
+    lines += _example_lines(kind, dict(kind.example_fields), False)
+    for part, model in _parts(kind):
+        several = "tuple" in str(kind.model_fields[part].annotation)
+        lines += [
+            "",
+            *textwrap.wrap(
+                (kind.model_fields[part].description or "").strip(),
+                78,
+                initial_indent="# ",
+                subsequent_indent="# ",
+            ),
+        ]
+        lines.append(f"# [[object.{part}]]" if several else f"# [object.{part}]")
+        lines += [f"# {line}" for line in _example_lines(model, {}, True)]
+    return "\n".join(lines) + "\n"
+
+
+def _stroke_model() -> type[Part]:
+    return next(model for _, model in _parts(FlashSection))
+
+
+def _example_lines(model: type[Part], set_fields: dict[str, Any], inside_comment: bool) -> list[str]:
+    lines = []
+    for name, info in model.model_fields.items():
+        if name in ("kind", "name") or any(True for _ in _models(info.annotation)):
+            continue
+        mark, words = unit_of(model, name), _words(info.annotation)
+        said = (info.description or "").strip().split("\n")[0]
+        if name in set_fields:
+            value = set_fields[name]
+            lines.append(f"{name} = {_toml(value)}{_padded(said)}")
+            continue
+        if mark is not None:
+            value = _toml(mark.text if mark.unit else float(mark.text))
+        elif words:
+            value = " | ".join(f'"{word}"' for word in words)
+        elif name == "constants":
+            value = " | ".join(f'"{s}"' for s in sets())
+        elif name == "awg":
+            value = '6 | "2/0"'
+        elif name == "polarity":
+            value = '"positive" | "negative"'
+        else:
+            value = '"..."'
+        lines.append(f"{'' if inside_comment else '# '}{name} = {value}{_padded(said)}")
+    return lines
+
+
+def _toml(value: Any) -> str:
+    return f'"{value}"' if isinstance(value, str) else f"{value:g}"
+
+
+def _padded(said: str) -> str:
+    return f"    # {said}" if said else ""
+
+
+def case_schema(registry: Registry) -> dict[str, Any]:
+    """Return the JSON schema of case files with the kinds that are installed."""
+    definitions: dict[str, Any] = {}
+    branches = []
+    for name, kind in registry.kinds.items():
+        own = kind.model_json_schema(ref_template="#/$defs/{model}")
+        definitions |= own.pop("$defs", {})
+        own["required"] = sorted({"kind", *own.get("required", [])})
+        own["properties"]["kind"] = {"const": name, "description": _summary(kind)}
+        if kind.uses:
+            own["properties"]["use"] = {"enum": list(kind.uses), "description": "What the part is for."}
+        definitions[name] = own
+        branches.append({"$ref": f"#/$defs/{name}"})
+    flash = FlashSection.model_json_schema(ref_template="#/$defs/{model}")
+    definitions |= flash.pop("$defs", {})
+    flash["properties"]["threat"] = {"enum": threat_names(), "description": "A named threat."}
+    value = {
+        "type": "object",
+        "required": ["value", "source"],
+        "additionalProperties": False,
+        "properties": {"value": {}, "unit": {"type": "string"}, "source": {"type": "string"}},
+    }
+    properties = {
+        key: {**value, "description": f"{meaning} [{unit or '1'}]"}
+        for key, (unit, meaning) in PROPERTIES.items()
+    }
+    own_materials = {
+        "type": "object",
+        "additionalProperties": {
+            "type": "object",
+            "additionalProperties": False,
+            "properties": {**properties, "family": {"enum": material_names()}},
+        },
+    }
+    return {
+        "$schema": "https://json-schema.org/draft/2020-12/schema",
+        "title": "strikeenergy case",
+        "type": "object",
+        "additionalProperties": False,
+        "required": ["flash", "object"],
+        "properties": {
+            "title": {"type": "string", "description": "What the case is about."},
+            "standard": {"enum": standards(registry), "description": "The standard that decides."},
+            "flash": flash,
+            "object": {"type": "array", "minItems": 1, "items": {"oneOf": branches}},
+            "materials": own_materials,
+        },
+        "$defs": definitions,
+    }

@@ -1,0 +1,197 @@
+"""Runs a case: every effect of each object's kind, its findings, and their verdicts.
+
+Each effect runs under its own guard. A plugin that raises becomes a recorded failure and the rest of the run stands; an
+effect that lacks an input, or whose model does not cover the object, becomes a remark.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from typing import Any
+
+import numpy as np
+
+from strikeenergy import __version__
+from strikeenergy.case import Case
+from strikeenergy.errors import InputError, MissingInput, OutsideValidity, PluginError
+from strikeenergy.lightning.flash import Flash
+from strikeenergy.limits import effect_verdict, reserves, size_verdicts
+from strikeenergy.note import Note
+from strikeenergy.plugin import Bracket, Criterion, Effect, Finding, Findings, StruckObject, Words
+from strikeenergy.registry import Registry, kind_name, short_reason
+from strikeenergy.results import Estimate, FindingResult, ObjectResult, Verdict
+from strikeenergy.sources import Standing, weakest
+
+__all__ = ["estimate", "run_effect", "run_object"]
+
+
+def estimate(case: Case) -> Estimate:
+    """Compute what the flash of a case does to each of its objects, and compare with the published limits.
+
+    A plugin that fails does not stop the run: see ``Estimate.all_failures``.
+    """
+    registry = case.registry
+    objects = [run_object(thing, case.flash, registry, case.standard) for thing in case.objects]
+    software = {"version": __version__, "plugins": registry.versions()}
+    return Estimate(
+        case.title, case.sha256, case.flash, objects, list(registry.failures), software, case.standard
+    )
+
+
+def run_object(thing: StruckObject, flash: Flash, registry: Registry, standard: str) -> ObjectResult:
+    """Compute every effect on one object, and its verdicts."""
+    result = ObjectResult(thing.name, kind_name(type(thing)), thing)
+    own = flash.through(thing.share)
+    ran: list[Effect] = []
+    for effect in registry.effects_of(type(thing)):
+        note = Note(quiet=thing.is_array or flash.is_array)
+        if _guarded(
+            result,
+            effect,
+            registry,
+            lambda e=effect, n=note: result.findings.update(run_effect(e, thing, own, n)),
+        ):
+            ran.append(effect)
+            result.notes[effect.name] = note
+            result.remarks += [text for text in note.remarks if text not in result.remarks]
+    sizes: list[Verdict] = []
+    try:
+        sizes = size_verdicts(thing, result.kind, registry, standard)
+    except Exception as error:  # the sizes are the plugin's own code
+        owner = registry.owners[f"kind {result.kind}"]
+        result.failures.append(
+            PluginError(owner.name, owner.distribution, "compute", f"sizes: {short_reason(error)}")
+        )
+    result.verdicts += sizes
+    for effect in ran:
+        for criterion in effect.criteria:
+            _guarded(result, effect, registry, lambda c=criterion: _compare(result, c, own, sizes))
+    return result
+
+
+def _compare(result: ObjectResult, criterion: Criterion, flash: Flash, sizes: list[Verdict]) -> None:
+    verdict = effect_verdict(criterion, result.findings, flash)
+    if verdict is not None:
+        result.verdicts.append(verdict)
+    result.verdicts += reserves(criterion, result.findings, sizes)
+
+
+def _guarded(result: ObjectResult, effect: Effect, registry: Registry, run: Any) -> bool:
+    """Run a piece of a plugin's work; record what went wrong. Returns whether it ran."""
+    try:
+        run()
+    except MissingInput as error:
+        result.remarks.append(f"{effect.name} is not computed: {error}")
+    except OutsideValidity as error:
+        result.remarks.append(f"{effect.name} is not computed, no model covers it: {error}")
+    except KeyboardInterrupt:
+        raise
+    except BaseException as error:  # whatever a plugin does, even sys.exit, the others go on
+        owner = registry.owner_of(effect)
+        reason = str(error) if isinstance(error, InputError) else short_reason(error)
+        result.failures.append(
+            PluginError(owner.name, owner.distribution, "compute", f"{effect.name}: {reason}")
+        )
+    else:
+        return True
+    return False
+
+
+def run_effect(effect: Effect, thing: StruckObject, flash: Flash, note: Note) -> dict[str, FindingResult]:
+    """Compute one effect and return its findings by name.
+
+    Args:
+        effect: what to compute.
+        thing: the struck object.
+        flash: the part of the flash that flows through it.
+        note: takes the working.
+
+    Raises:
+        MissingInput, OutsideValidity: it cannot be given.
+        TypeError: the plugin returned something else than it declared, or a number that is not finite.
+    """
+    for text in effect.leaves_out:
+        note.leaves_out(text)
+    results = effect.function(thing, flash, note)
+    if not isinstance(results, effect.results):
+        raise TypeError(f"it returned {type(results).__name__} and declares {effect.results.__name__}")
+    return {
+        name: _finding(name, declared, results, effect, note, flash)
+        for name, declared in effect.findings.items()
+    }
+
+
+def _finding(
+    name: str, declared: Finding, results: Findings, effect: Effect, note: Note, flash: Flash
+) -> FindingResult:
+    value: Any = getattr(results, name)
+    low = high = None
+    if isinstance(value, Bracket):
+        value, low, high = value.value, value.low, value.high
+    _check_value(name, value, declared)
+    standing, sources = _rests_on(name, effect, note, flash)
+    return FindingResult(
+        name=name,
+        value=_tidy(value),
+        unit=declared.unit,
+        meaning=declared.meaning,
+        effect=effect.name,
+        standing=standing,
+        sources=sources,
+        low=_tidy(low),
+        high=_tidy(high),
+        show=declared.show,
+        bound=f"{declared.bound} bound" if declared.bound else "",
+        why_not=note.unknowns.get(name, "") if value is None else "",
+    )
+
+
+def _tidy(value: Any) -> Any:
+    """Turn numpy scalars into plain ones."""
+    return (
+        value.item()
+        if isinstance(value, np.generic) or (isinstance(value, np.ndarray) and not value.ndim)
+        else value
+    )
+
+
+def _check_value(name: str, value: Any, declared: Finding) -> None:
+    if value is None:
+        return
+    word = isinstance(value, (str, bool, np.bool_, Words))
+    if declared.unit is None:
+        if not word and not (isinstance(value, np.ndarray) and value.dtype == bool):
+            raise TypeError(f"{name} is declared a word or truth value and is {value!r}")
+    elif word:
+        raise TypeError(f"{name} is declared in {declared.unit or 'plain numbers'} and is {value!r}")
+    elif np.ndim(value) == 0 and not np.isfinite(float(value)):
+        raise TypeError(f"{name} is not a finite number")
+
+
+def _rests_on(name: str, effect: Effect, note: Note, flash: Flash) -> tuple[str, tuple[str, ...]]:
+    """Return the weakest standing of what a finding rests on, and its sources.
+
+    Working that is tagged with the finding is taken together with all the working before it (steps feed one another);
+    without a tag the whole note counts. The user's own values do not weaken a finding.
+    """
+    tagged = [number for number, step in enumerate(note.steps) if name in step.findings]
+    steps = note.steps[: tagged[-1] + 1] if tagged else note.steps
+    constants = [value for step in steps for value in step.values.values() if hasattr(value, "source")]
+    if not tagged:
+        constants = [constant for _, constant in note.constants]
+    standings = [constant.standing for constant in constants if constant.standing] + [
+        constant.standing for constant in note.assumptions
+    ]
+    standings += [flash.standing, Standing.DERIVED]
+    ranked = weakest(s for s in standings if s is not Standing.GIVEN)
+    sources: Mapping[str, None] = dict.fromkeys(
+        str(source)
+        for source in (
+            *(step.source for step in steps if name in step.findings),
+            *effect.sources,
+            *(constant.source for constant in constants),
+            flash.source,
+        )
+        if source is not None
+    )
+    return str(ranked), tuple(sources)

@@ -1,0 +1,1 @@
+"""The input: what the lightning current is."""
