@@ -6,6 +6,7 @@ A plugin imports from here, from ``strikeenergy.physics`` and from third-party l
 from __future__ import annotations
 
 from strikeenergy.errors import MissingInput, OutsideValidity, Problem, QuantityError
+from strikeenergy.inputs import MaterialName, OfMaterial, Part, StruckObject, Unit
 from strikeenergy.lightning.flash import Flash, Stroke
 from strikeenergy.materials import Material
 from strikeenergy.note import Formula, Given, Note
@@ -16,11 +17,6 @@ from strikeenergy.plugin import (
     Effect,
     Finding,
     Findings,
-    MaterialName,
-    OfMaterial,
-    Part,
-    StruckObject,
-    Unit,
     Value,
     Words,
     effect,

@@ -18,11 +18,11 @@ from pydantic import Field
 from strikeenergy.casetext import CaseError, locate, read_text, syntax_problem
 from strikeenergy.declared import validate
 from strikeenergy.errors import InputError, Problem, close_matches
+from strikeenergy.inputs import Part, StruckObject, Unit
 from strikeenergy.lightning.flash import Flash, Stroke
 from strikeenergy.lightning.threats import threat
-from strikeenergy.limits import DEFAULT_STANDARD, check_standard
+from strikeenergy.limit_tables import DEFAULT_STANDARD, check_standard
 from strikeenergy.materials import PROPERTIES, Materials, material_names, own_material
-from strikeenergy.plugin import Part, StruckObject, Unit
 from strikeenergy.registry import Registry, load
 from strikeenergy.sources import Constant, Source, Standing
 from strikeenergy.units import Quantity
@@ -140,7 +140,9 @@ def read_case(
     try:
         return _build(data, digest, name, threat, standard, registry)
     except CaseError as error:
-        raise CaseError([_placed(problem, text, name, data) for problem in error.problems]) from None
+        lines = {problem: _line(problem, text) for problem in error.problems}
+        placed = [_placed(p, lines[p], name, data) for p in sorted(error.problems, key=lines.__getitem__)]
+        raise CaseError(placed) from None
 
 
 def make_case(data: Mapping[str, Any], *, registry: Registry | None = None) -> Case:
@@ -155,7 +157,7 @@ def make_case(data: Mapping[str, Any], *, registry: Registry | None = None) -> C
 
 # -- building ----------------------------------------------------------------------------------------------
 
-_TOP = {"title", "standard", "flash", "object", "materials"}
+_TOP = ("title", "standard", "flash", "object", "materials")
 
 
 def _build(
@@ -179,7 +181,8 @@ def _build(
     try:
         chosen = check_standard(str(chosen), registry)
     except InputError as error:
-        problems += [replace(p, path=("standard",)) for p in error.problems]
+        where = "--standard" if standard else "standard"
+        problems += [replace(p, path=(where,)) for p in error.problems]
     materials = _materials(data.get("materials", {}), problems)
     flash = _flash(data.get("flash"), threat_name, problems)
     objects = _objects(data.get("object"), registry, materials, problems)
@@ -281,7 +284,7 @@ def _flash(data: Any, threat_name: str | None, problems: list[Problem]) -> Flash
         try:
             return threat(threat_name)
         except InputError as error:
-            problems += error.problems
+            problems += [replace(p, path=("--threat",)) for p in error.problems]
             return None
     if data is None:
         problems.append(Problem("the flash is missing", write))
@@ -390,19 +393,32 @@ def _object(
     if not str(named.get("name", "")).strip():
         named["name"] = f"{table['kind']} {number + 1}"
     context = {"materials": materials, "collect": True}
-    thing = validate(kind, named, path, context, problems)
-    problems += [replace(p, path=(*path, *p.path)) for p in kind.missing_or_extra(table.keys())]
-    if thing is not None and not list(kind.missing_or_extra(table.keys())):
-        problems += [replace(p, path=(*path, *p.path)) for p in thing.check()]
+    found: list[Problem] = []
+    thing = validate(kind, named, path, context, found)
+    problems += found
+    sizes = list(kind.missing_or_extra(table.keys()))
+    problems += [replace(p, path=(*path, *p.path)) for p in sizes]
+    if not sizes:
+        # What is wrong with the values taken together is told as well where only other fields are wrong.
+        wrong = {p.path[len(path)] for p in found if len(p.path) > len(path)}
+        sound = {key: value for key, value in named.items() if key not in wrong}
+        checked = thing if thing is not None else validate(kind, sound, path, context, [])
+        if checked is not None and not list(kind.missing_or_extra(sound.keys())):
+            problems += [replace(p, path=(*path, *p.path)) for p in checked.check()]
     return thing
 
 
 # -- lines -------------------------------------------------------------------------------------------------
 
 
-def _placed(problem: Problem, text: str, name: str, data: Mapping[str, Any]) -> Problem:
-    line = locate(text, problem.path)
-    return replace(problem, place=f"{name}:{line}", path=_with_name(problem.path, data))
+def _line(problem: Problem, text: str) -> int:
+    """Return the line of a problem; 0 for one of the command line."""
+    from_command = problem.path and str(problem.path[0]).startswith("--")
+    return 0 if from_command else locate(text, problem.path)
+
+
+def _placed(problem: Problem, line: int, name: str, data: Mapping[str, Any]) -> Problem:
+    return replace(problem, place=f"{name}:{line}" if line else "", path=_with_name(problem.path, data))
 
 
 def _with_name(path: tuple[Any, ...], data: Mapping[str, Any]) -> tuple[str | int, ...]:

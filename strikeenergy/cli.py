@@ -131,6 +131,8 @@ def estimate(
     from strikeenergy import case as cases
     from strikeenergy import engine
 
+    if notes and form == "csv":
+        raise click.UsageError("--notes goes with --text or --json")
     loaded = cases.load_case(case, threat=threat, standard=standard)
     if strict_plugins and loaded.registry.failures:
         raise loaded.registry.failures[0]
@@ -156,8 +158,6 @@ def estimate(
         show(estimate_text(result))
         if notes:
             show("\n" + notes_text(result))
-    if notes and form == "csv":
-        raise click.UsageError("--notes goes with --text or --json")
     _show_failures(result.all_failures)
     return int(result.exit_code)
 
@@ -174,7 +174,7 @@ def new(kind: str, output: str | None, force: bool) -> int:
       strikeenergy new conductor
       strikeenergy new sheet -o sheet.toml
     """
-    from strikeenergy.describe import new_case
+    from strikeenergy.newcase import new_case
     from strikeenergy.registry import load
 
     registry = load()
@@ -231,7 +231,7 @@ def schema(output: str | None, force: bool) -> int:
     Example:
       strikeenergy schema -o strikeenergy-case.schema.json
     """
-    from strikeenergy.describe import case_schema
+    from strikeenergy.newcase import case_schema
     from strikeenergy.registry import load
     from strikeenergy.report.machine import to_json
 

@@ -10,7 +10,7 @@ from typing import Any, TypeVar
 from pydantic import ValidationError
 
 from strikeenergy.errors import Problem, close_matches, spell_path
-from strikeenergy.plugin import Part
+from strikeenergy.inputs import Part
 
 __all__ = ["validate"]
 

@@ -5,19 +5,19 @@ from __future__ import annotations
 import textwrap
 from collections.abc import Iterable
 from dataclasses import dataclass, field
-from typing import Any, get_args
+from typing import Any
 
-from strikeenergy.case import FlashSection
 from strikeenergy.errors import UnknownName
+from strikeenergy.inputs import Part, default_text, parts_of, summary_of, unit_of, words_of
 from strikeenergy.lightning.threats import COMPONENTS, levels, threat, threat_names
-from strikeenergy.limits import DEFAULT_STANDARD, LimitTable, Row, limit_tables, standards
+from strikeenergy.limit_tables import DEFAULT_STANDARD, LimitTable, Row, limit_tables, standards
 from strikeenergy.materials import PROPERTIES, Materials, material_names, sets
-from strikeenergy.plugin import Effect, Part, StruckObject, default_text, unit_of
+from strikeenergy.plugin import Effect
 from strikeenergy.registry import Registry, kind_name
 from strikeenergy.sources import Constant, sources
 from strikeenergy.units import dimension_name, format_quantity, pretty
 
-__all__ = ["Page", "case_schema", "describe", "new_case", "plugin_data", "plugin_pages"]
+__all__ = ["Page", "describe", "plugin_data", "plugin_pages"]
 
 _SUBJECTS = ("kinds", "materials", "threats", "tables", "standards", "sources")
 _WIDTH = 80
@@ -102,19 +102,15 @@ def _kinds(registry: Registry) -> list[Page]:
         effects = ", ".join(effect.name for effect in registry.effects_of(kind))
         owner = registry.owners[f"kind {name}"]
         entries.append(
-            (name, f"{_summary(kind)}. Effects: {effects}. From {owner.distribution} {owner.version}.")
+            (name, f"{summary_of(kind)}. Effects: {effects}. From {owner.distribution} {owner.version}.")
         )
     return [Page("Kinds of struck object", entries)]
-
-
-def _summary(kind: type[StruckObject]) -> str:
-    return kind.summary or (kind.__doc__ or "").strip().split("\n")[0].rstrip(".")
 
 
 def _kind(registry: Registry, name: str) -> list[Page]:
     kind = registry.kind(name)
     pages = [Page(f"{name}: inputs", list(_fields(kind)), (kind.__doc__ or "").strip())]
-    pages += [Page(f"{name}.{part}: inputs", list(_fields(model))) for part, model in _parts(kind)]
+    pages += [Page(f"{name}.{part}: inputs", list(_fields(model))) for part, model in parts_of(kind)]
     if kind.uses:
         pages.append(Page(f"{name}: what use may be", list(kind.uses.items())))
     for effect in registry.effects_of(kind):
@@ -156,7 +152,7 @@ def _fields(model: type[Part]) -> Iterable[tuple[str, str]]:
             said.append(
                 f"{dimension_name(mark.unit)}{', ' + mark.range_text if mark.range_text else ''}; such as {mark.text!r}"
             )
-        words = _words(info.annotation)
+        words = words_of(info.annotation)
         if words:
             said.append(f"one of {', '.join(map(repr, words))}")
         default = default_text(model, name)
@@ -165,26 +161,6 @@ def _fields(model: type[Part]) -> Iterable[tuple[str, str]]:
         elif info.is_required():
             said.append("required")
         yield name, ". ".join(said) + "."
-
-
-def _words(annotation: Any) -> tuple[str, ...]:
-    arguments = get_args(annotation)
-    if arguments and all(isinstance(a, str) for a in arguments):
-        return arguments
-    return next((words for a in arguments if (words := _words(a))), ())
-
-
-def _parts(model: type[Part]) -> Iterable[tuple[str, type[Part]]]:
-    for name, info in model.model_fields.items():
-        for candidate in _models(info.annotation):
-            yield name, candidate
-
-
-def _models(annotation: Any) -> Iterable[type[Part]]:
-    if isinstance(annotation, type) and issubclass(annotation, Part):
-        yield annotation
-    for argument in get_args(annotation):
-        yield from _models(argument)
 
 
 def _constant(value: Constant) -> str:
@@ -355,135 +331,3 @@ def plugin_pages(registry: Registry) -> list[Page]:
         failed = [(f.plugin, f"{f.distribution}: failed to {f.stage}: {f.reason}") for f in registry.failures]
         pages.append(Page("FAILED", failed))
     return pages
-
-
-# -- a case to start from, and the schema --------------------------------------------------------------------
-
-
-def new_case(registry: Registry, name: str) -> str:
-    """Write a commented case with one object of a kind. It runs as it stands.
-
-    Raises:
-        UnknownName: no such kind.
-    """
-    kind = registry.kind(name)
-    lines = [
-        "#:schema ./strikeenergy-case.schema.json",
-        "# Lines that begin with '# ' and a key are what else may be said; take the '# ' away to use one.",
-        'title = "My case"',
-        "# standard = " + " | ".join(f'"{s}"' for s in standards(registry)),
-        "",
-        "[flash]",
-        'threat = "LPL I"        # or the strokes themselves:',
-        "# [[flash.stroke]]",
-        *(f"# {line}" for line in _example_lines(_stroke_model(), {}, True)),
-        "",
-        "[[object]]",
-        f'kind = "{name}"',
-        f'name = "my {name}"',
-    ]
-    lines += _example_lines(kind, dict(kind.example_fields), False)
-    for part, model in _parts(kind):
-        several = "tuple" in str(kind.model_fields[part].annotation)
-        lines += [
-            "",
-            *textwrap.wrap(
-                (kind.model_fields[part].description or "").strip(),
-                78,
-                initial_indent="# ",
-                subsequent_indent="# ",
-            ),
-        ]
-        lines.append(f"# [[object.{part}]]" if several else f"# [object.{part}]")
-        lines += [f"# {line}" for line in _example_lines(model, {}, True)]
-    return "\n".join(lines) + "\n"
-
-
-def _stroke_model() -> type[Part]:
-    return next(model for _, model in _parts(FlashSection))
-
-
-def _example_lines(model: type[Part], set_fields: dict[str, Any], inside_comment: bool) -> list[str]:
-    lines = []
-    for name, info in model.model_fields.items():
-        if name in ("kind", "name") or any(True for _ in _models(info.annotation)):
-            continue
-        mark, words = unit_of(model, name), _words(info.annotation)
-        said = (info.description or "").strip().split("\n")[0]
-        if name in set_fields:
-            value = set_fields[name]
-            lines.append(f"{name} = {_toml(value)}{_padded(said)}")
-            continue
-        if mark is not None:
-            value = _toml(mark.text if mark.unit else float(mark.text))
-        elif words:
-            value = " | ".join(f'"{word}"' for word in words)
-        elif name == "constants":
-            value = " | ".join(f'"{s}"' for s in sets())
-        elif name == "awg":
-            value = '6 | "2/0"'
-        elif name == "polarity":
-            value = '"positive" | "negative"'
-        else:
-            value = '"..."'
-        lines.append(f"{'' if inside_comment else '# '}{name} = {value}{_padded(said)}")
-    return lines
-
-
-def _toml(value: Any) -> str:
-    return f'"{value}"' if isinstance(value, str) else f"{value:g}"
-
-
-def _padded(said: str) -> str:
-    return f"    # {said}" if said else ""
-
-
-def case_schema(registry: Registry) -> dict[str, Any]:
-    """Return the JSON schema of case files with the kinds that are installed."""
-    definitions: dict[str, Any] = {}
-    branches = []
-    for name, kind in registry.kinds.items():
-        own = kind.model_json_schema(ref_template="#/$defs/{model}")
-        definitions |= own.pop("$defs", {})
-        own["required"] = sorted({"kind", *own.get("required", [])})
-        own["properties"]["kind"] = {"const": name, "description": _summary(kind)}
-        if kind.uses:
-            own["properties"]["use"] = {"enum": list(kind.uses), "description": "What the part is for."}
-        definitions[name] = own
-        branches.append({"$ref": f"#/$defs/{name}"})
-    flash = FlashSection.model_json_schema(ref_template="#/$defs/{model}")
-    definitions |= flash.pop("$defs", {})
-    flash["properties"]["threat"] = {"enum": threat_names(), "description": "A named threat."}
-    value = {
-        "type": "object",
-        "required": ["value", "source"],
-        "additionalProperties": False,
-        "properties": {"value": {}, "unit": {"type": "string"}, "source": {"type": "string"}},
-    }
-    properties = {
-        key: {**value, "description": f"{meaning} [{unit or '1'}]"}
-        for key, (unit, meaning) in PROPERTIES.items()
-    }
-    own_materials = {
-        "type": "object",
-        "additionalProperties": {
-            "type": "object",
-            "additionalProperties": False,
-            "properties": {**properties, "family": {"enum": material_names()}},
-        },
-    }
-    return {
-        "$schema": "https://json-schema.org/draft/2020-12/schema",
-        "title": "strikeenergy case",
-        "type": "object",
-        "additionalProperties": False,
-        "required": ["flash", "object"],
-        "properties": {
-            "title": {"type": "string", "description": "What the case is about."},
-            "standard": {"enum": standards(registry), "description": "The standard that decides."},
-            "flash": flash,
-            "object": {"type": "array", "minItems": 1, "items": {"oneOf": branches}},
-            "materials": own_materials,
-        },
-        "$defs": definitions,
-    }

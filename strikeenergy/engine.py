@@ -14,10 +14,11 @@ import numpy as np
 from strikeenergy import __version__
 from strikeenergy.case import Case
 from strikeenergy.errors import InputError, MissingInput, OutsideValidity, PluginError
+from strikeenergy.inputs import StruckObject
 from strikeenergy.lightning.flash import Flash
 from strikeenergy.limits import effect_verdict, reserves, size_verdicts
 from strikeenergy.note import Note
-from strikeenergy.plugin import Bracket, Criterion, Effect, Finding, Findings, StruckObject, Words
+from strikeenergy.plugin import Bracket, Criterion, Effect, Finding, Findings, Words
 from strikeenergy.registry import Registry, kind_name, short_reason
 from strikeenergy.results import Estimate, FindingResult, ObjectResult, Verdict
 from strikeenergy.sources import Standing, weakest

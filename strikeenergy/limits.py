@@ -12,204 +12,28 @@ from __future__ import annotations
 
 import itertools
 from collections.abc import Iterable, Mapping
-from dataclasses import dataclass, field
-from functools import lru_cache
-from importlib.resources import files
+from dataclasses import dataclass
 from typing import Any, cast
 
 import numpy as np
 
-from strikeenergy.errors import DataError, UnknownName
+from strikeenergy.inputs import StruckObject
 from strikeenergy.lightning.flash import Flash
-from strikeenergy.plugin import Criterion, StruckObject, Words
+from strikeenergy.limit_tables import SIZE_UNITS, Check, LimitTable, Row, limit_tables
+from strikeenergy.plugin import Criterion, Words
 from strikeenergy.registry import Registry
 from strikeenergy.results import FindingResult, Verdict
 from strikeenergy.sources import Constant, weakest
-from strikeenergy.tables import constant, read_table
 from strikeenergy.units import format_quantity, read
 
-__all__ = [
-    "DEFAULT_STANDARD",
-    "LimitTable",
-    "effect_verdict",
-    "limit_tables",
-    "meets",
-    "parse_table",
-    "reserves",
-    "size_verdicts",
-    "standards",
-]
+__all__ = ["effect_verdict", "meets", "reserves", "size_verdicts"]
 
-DEFAULT_STANDARD = "IEC 62305-3:2010"
 _TOLERANCE = 1e-9
-_SIZE_UNITS = {
-    "section": ("m**2", "mm**2"),
-    "diameter": ("m", "mm"),
-    "thickness": ("m", "mm"),
-    "side": ("m", "mm"),
-}
 
 
 def meets(value: float, limit: float, below: bool = False) -> bool:
     """Whether a value holds a limit. Exactly at the limit meets it (relative tolerance 1e-9)."""
     return value <= limit * (1 + _TOLERANCE) if below else value >= limit * (1 - _TOLERANCE)
-
-
-# -- tables ------------------------------------------------------------------------------------------------
-
-
-@dataclass(frozen=True)
-class Variant:
-    """Another minimum that holds under a condition."""
-
-    minimum: Constant
-    quantity: str
-    when: Mapping[str, Any]
-    say: str
-
-
-@dataclass(frozen=True)
-class Row:
-    """One row: what it is for, and the minimum."""
-
-    materials: tuple[str, ...]
-    forms: tuple[str, ...]
-    uses: tuple[str, ...]
-    minimum: Constant
-    quantity: str
-    say: str = ""
-    variants: tuple[Variant, ...] = ()
-    only_when: Mapping[str, Any] = field(default_factory=dict)
-    only_when_say: str = ""
-
-
-@dataclass(frozen=True)
-class Check:
-    """One check of a table: its rows, and when it applies at all."""
-
-    name: str
-    rows: tuple[Row, ...]
-    say: str = ""
-    applies_when: Mapping[str, Any] = field(default_factory=dict)
-    ask: str = ""
-    not_covered_when: Mapping[str, Any] = field(default_factory=dict)
-    not_covered: str = ""
-
-
-@dataclass(frozen=True)
-class LimitTable:
-    """A table of minimum sizes."""
-
-    name: str
-    standard: str
-    clause: str
-    title: str
-    kind: str
-    uses: tuple[str, ...]
-    checks: tuple[Check, ...]
-    perhaps: tuple[str, ...] = ()
-    perhaps_say: str = ""
-    remark: str = ""
-
-    @property
-    def full_clause(self) -> str:
-        """Clause with its edition."""
-        return f"{self.standard} {self.clause}"
-
-
-def _tuple(value: Any) -> tuple[str, ...]:
-    if value is None:
-        return ()
-    return (value,) if isinstance(value, str) else tuple(value)
-
-
-def parse_table(raw: Mapping[str, Any]) -> LimitTable:
-    """Make a limit table of the content of a table file.
-
-    Raises:
-        DataError: something is missing, has a wrong unit or no source.
-    """
-    try:
-        defaults = raw["defaults"]
-        quantity = str(raw["quantity"])
-
-        def minimum(entry: Any, measured: str) -> Constant:
-            return constant(entry, _SIZE_UNITS[measured][0], meaning=f"minimum {measured}", defaults=defaults)
-
-        def variant(entry: Mapping[str, Any], of: str) -> Variant:
-            measured = entry.get("quantity", of)
-            return Variant(minimum(entry["minimum"], measured), measured, entry["when"], entry["say"])
-
-        def row(entry: Mapping[str, Any]) -> Row:
-            measured = entry.get("quantity", quantity)
-            return Row(
-                _tuple(entry["material"]),
-                _tuple(entry.get("form")),
-                _tuple(entry.get("use")),
-                minimum(entry["minimum"], measured),
-                measured,
-                entry.get("say", ""),
-                tuple(variant(v, measured) for v in entry.get("variant", ())),
-                entry.get("only_when", {}),
-                entry.get("only_when_say", ""),
-            )
-
-        checks = tuple(
-            Check(
-                check["name"],
-                tuple(row(entry) for entry in check["row"]),
-                check.get("say", ""),
-                check.get("applies_when", {}),
-                check.get("ask", ""),
-                check.get("not_covered_when", {}),
-                check.get("not_covered", ""),
-            )
-            for check in raw["check"]
-        )
-        return LimitTable(
-            raw["name"],
-            raw["standard"],
-            raw["clause"],
-            raw["title"],
-            raw["kind"],
-            _tuple(raw["use"]),
-            checks,
-            _tuple(raw.get("perhaps")),
-            raw.get("perhaps_say", ""),
-            raw.get("remark", ""),
-        )
-    except KeyError as error:
-        raise DataError(
-            f"limit table {raw.get('name', '(no name)')!r}: {error.args[0]!r} is missing"
-        ) from None
-
-
-@lru_cache(maxsize=1)
-def _built_in() -> tuple[LimitTable, ...]:
-    folder = files("strikeenergy") / "data" / "limits"
-    names = sorted(f.name for f in folder.iterdir() if f.name.endswith(".toml"))
-    return tuple(parse_table(read_table("strikeenergy", "data", "limits", name)) for name in names)
-
-
-def limit_tables(registry: Registry) -> list[LimitTable]:
-    """Return the built-in tables and those that plugins bring."""
-    return [*_built_in(), *(parse_table(raw) for raw in registry.tables)]
-
-
-def standards(registry: Registry) -> list[str]:
-    """Return the standards that a case may name."""
-    return list(dict.fromkeys(table.standard for table in limit_tables(registry)))
-
-
-def check_standard(name: str, registry: Registry) -> str:
-    """Return the standard's name.
-
-    Raises:
-        UnknownName: no table of such a standard, with the nearest names.
-    """
-    if name not in standards(registry):
-        raise UnknownName("standard", name, standards(registry))
-    return name
 
 
 # -- size --------------------------------------------------------------------------------------------------
@@ -244,8 +68,9 @@ def size_verdicts(thing: StruckObject, kind: str, registry: Registry, standard: 
     if not tables:
         return []
     if thing.use is None:
-        uses = ", ".join(repr(use) for use in type(thing).uses)
-        return [_not_covered("minimum size", standard, standard, f"say what it is for: use = one of {uses}")]
+        known = [repr(use) for use in type(thing).uses]
+        uses = known[0] if len(known) == 1 else "one of " + ", ".join(known)
+        return [_not_covered("minimum size", standard, standard, f"say what it is for: use = {uses}")]
     found: dict[tuple[str, str, str], Verdict] = {}
     for table in tables:
         if thing.use in table.uses or thing.use in table.perhaps:
@@ -362,7 +187,7 @@ def _holds(when: Mapping[str, Any], thing: StruckObject) -> bool | None:
                 )
             )
         else:
-            states.append(value in _tuple(wanted))
+            states.append(value in ((wanted,) if isinstance(wanted, str) else tuple(wanted)))
     if False in states:
         return False
     return None if None in states else True
@@ -382,17 +207,17 @@ def _combine(possible: list[_Possibility], table: LimitTable, check: Check, coun
     notes = [*shown.says]
     if outcome == "conditional":
         for p in measured:
-            unit, show = _SIZE_UNITS[p.quantity]
+            unit, show = SIZE_UNITS[p.quantity]
             ending = f" ({'; '.join(p.says)})" if p.says and p.says != shown.says else ""
             notes.append(f"{p.outcome} {p.quantity} {format_quantity(p.limit.value, unit, show)}{ending}")
         asks = dict.fromkeys(a for p in possible for a in p.asks)
         notes.append("tell: " + "; ".join(asks))
     elif outcome == "not covered":
-        size = _SIZE_UNITS[shown.quantity][1]
+        size = SIZE_UNITS[shown.quantity][1]
         lacks = f"give the {shown.quantity}: the limit is {format_quantity(shown.limit.value, shown.limit.unit, size)}"
         notes.append(next(iter(shown.says), lacks))
     notes += [text for text in (check.say, table.remark) if text]
-    unit, show = _SIZE_UNITS[shown.quantity]
+    unit, show = SIZE_UNITS[shown.quantity]
     value, limit = shown.value, shown.limit.value
     return Verdict(
         check=check.name,
@@ -457,7 +282,7 @@ def reserves(
     needed = findings[criterion.smallest].value
     if needed is None or np.ndim(needed) or not needed:
         return []
-    unit, show = _SIZE_UNITS[criterion.size]
+    unit, show = SIZE_UNITS[criterion.size]
     return [
         Verdict(
             check=f"reserve of the table's minimum to {criterion.check}",

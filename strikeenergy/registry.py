@@ -16,7 +16,8 @@ from typing import Any
 import pluggy
 
 from strikeenergy.errors import PluginError, UnknownName
-from strikeenergy.plugin import API_VERSION, Effect, HookSpecs, StruckObject
+from strikeenergy.inputs import StruckObject
+from strikeenergy.plugin import API_VERSION, Effect, HookSpecs
 
 __all__ = ["GROUP", "PluginInfo", "Registry", "load", "short_reason"]
 

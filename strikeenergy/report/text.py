@@ -87,7 +87,8 @@ def _object_lines(result: ObjectResult) -> list[str]:
         lines.append("For comparison (does not decide)")
         for verdict in others:
             lines += _verdict_lines(verdict, None, brief=True)
-    lines.append("Findings")
+    if result.findings:
+        lines.append("Findings")
     for found in result.findings.values():
         lines += _finding_lines(found)
     reasons: dict[str, list[str]] = {}
