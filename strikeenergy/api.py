@@ -6,6 +6,7 @@ A plugin imports from here, from ``strikeenergy.physics`` and from third-party l
 from __future__ import annotations
 
 from strikeenergy.errors import MissingInput, OutsideValidity, Problem, QuantityError
+from strikeenergy.formatting import format_quantity
 from strikeenergy.inputs import MaterialName, OfMaterial, Part, StruckObject, Unit
 from strikeenergy.lightning.flash import Flash, Stroke
 from strikeenergy.materials import Material
@@ -24,7 +25,7 @@ from strikeenergy.plugin import (
 )
 from strikeenergy.sources import Constant, Source, Standing, source
 from strikeenergy.tables import constant, data_file, read_table
-from strikeenergy.units import Quantity, awg_section, format_quantity
+from strikeenergy.units import Quantity, awg_section
 
 __all__ = [
     "API_VERSION",

@@ -8,6 +8,7 @@ from dataclasses import dataclass, field
 from typing import Any
 
 from strikeenergy.errors import UnknownName
+from strikeenergy.formatting import format_quantity, pretty
 from strikeenergy.inputs import Part, default_text, parts_of, summary_of, unit_of, words_of
 from strikeenergy.lightning.threats import COMPONENTS, levels, threat, threat_names
 from strikeenergy.limit_tables import DEFAULT_STANDARD, LimitTable, Row, limit_tables, standards
@@ -15,7 +16,7 @@ from strikeenergy.materials import PROPERTIES, Materials, material_names, sets
 from strikeenergy.plugin import Effect
 from strikeenergy.registry import Registry, kind_name
 from strikeenergy.sources import Constant, sources
-from strikeenergy.units import dimension_name, format_quantity, pretty
+from strikeenergy.units import dimension_name
 
 __all__ = ["Page", "describe", "plugin_data", "plugin_pages"]
 

@@ -24,8 +24,9 @@ from pydantic.json_schema import JsonSchemaValue
 from pydantic_core import CoreSchema, PydanticCustomError, core_schema
 
 from strikeenergy.errors import InputError, Problem, close_matches
+from strikeenergy.formatting import format_quantity, pretty
 from strikeenergy.materials import DEFAULT_SET, Material, Materials, material_names, sets
-from strikeenergy.units import Quantity, dimension_name, format_quantity, pretty, read, scale
+from strikeenergy.units import Quantity, dimension_name, read, scale
 
 __all__ = [
     "MaterialName",

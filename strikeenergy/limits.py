@@ -17,6 +17,7 @@ from typing import Any, cast
 
 import numpy as np
 
+from strikeenergy.formatting import format_quantity
 from strikeenergy.inputs import StruckObject
 from strikeenergy.lightning.flash import Flash
 from strikeenergy.limit_tables import SIZE_UNITS, Check, LimitTable, Row, limit_tables
@@ -24,7 +25,7 @@ from strikeenergy.plugin import Criterion, Words
 from strikeenergy.registry import Registry
 from strikeenergy.results import FindingResult, Verdict
 from strikeenergy.sources import Constant, weakest
-from strikeenergy.units import format_quantity, read
+from strikeenergy.units import read
 
 __all__ = ["effect_verdict", "meets", "reserves", "size_verdicts"]
 

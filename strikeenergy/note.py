@@ -16,8 +16,8 @@ from typing import Any
 
 import numpy as np
 
+from strikeenergy.formatting import format_number, format_quantity
 from strikeenergy.sources import Constant, Source, Standing
-from strikeenergy.units import format_number, format_quantity
 
 __all__ = ["Formula", "Given", "Note", "Step", "show_symbol"]
 

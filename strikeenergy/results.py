@@ -10,11 +10,12 @@ from typing import Any
 import numpy as np
 
 from strikeenergy.errors import ExitCode, PluginError
+from strikeenergy.formatting import engineering, format_number, format_quantity, pretty
 from strikeenergy.inputs import StruckObject
 from strikeenergy.lightning.flash import Flash
 from strikeenergy.note import Note
 from strikeenergy.plugin import Words
-from strikeenergy.units import convert, engineering, format_number, format_quantity, pretty, quantity
+from strikeenergy.units import convert, quantity
 
 __all__ = ["CAUTIONS", "OUTCOMES", "Estimate", "FindingResult", "ObjectResult", "Verdict"]
 

@@ -14,8 +14,9 @@ from typing import Any, cast
 import numpy as np
 
 from strikeenergy.errors import InputError, MissingInput, Problem
+from strikeenergy.formatting import format_quantity
 from strikeenergy.sources import Source, Standing
-from strikeenergy.units import Quantity, format_quantity, read
+from strikeenergy.units import Quantity, read
 
 __all__ = ["LONG_STROKE", "Flash", "Stroke", "impossible"]
 

@@ -5,11 +5,11 @@ from __future__ import annotations
 import textwrap
 from collections.abc import Iterable
 
+from strikeenergy.formatting import format_number, format_quantity
 from strikeenergy.lightning.flash import Flash
 from strikeenergy.note import Note, show_symbol
 from strikeenergy.results import Estimate, FindingResult, ObjectResult, Verdict
 from strikeenergy.sources import Constant
-from strikeenergy.units import format_number, format_quantity
 
 __all__ = ["WIDTH", "estimate_text", "notes_text", "wrap"]
 
