@@ -21,7 +21,7 @@ from strikeenergy.errors import InputError, Problem, close_matches
 from strikeenergy.inputs import Part, StruckObject, Unit
 from strikeenergy.lightning.flash import Flash, Stroke
 from strikeenergy.lightning.threats import threat
-from strikeenergy.limit_tables import DEFAULT_STANDARD, check_standard
+from strikeenergy.limit_tables import DEFAULT_STANDARD
 from strikeenergy.materials import PROPERTIES, Materials, material_names, own_material
 from strikeenergy.registry import Registry, load
 from strikeenergy.sources import Constant, Source, Standing
@@ -179,7 +179,7 @@ def _build(
         title = ""
     chosen = standard or data.get("standard", DEFAULT_STANDARD)
     try:
-        chosen = check_standard(str(chosen), registry)
+        chosen = registry.standard(str(chosen))
     except InputError as error:
         where = "--standard" if standard else "standard"
         problems += [replace(p, path=(where,)) for p in error.problems]

@@ -11,7 +11,7 @@ from strikeenergy.errors import UnknownName
 from strikeenergy.formatting import format_quantity, pretty
 from strikeenergy.inputs import Part, default_text, parts_of, summary_of, unit_of, words_of
 from strikeenergy.lightning.threats import COMPONENTS, levels, threat, threat_names
-from strikeenergy.limit_tables import DEFAULT_STANDARD, LimitTable, Row, limit_tables, standards
+from strikeenergy.limit_tables import DEFAULT_STANDARD, LimitTable, Row
 from strikeenergy.materials import PROPERTIES, Materials, material_names, sets
 from strikeenergy.plugin import Effect
 from strikeenergy.registry import Registry, kind_name
@@ -90,7 +90,7 @@ def _overview(registry: Registry) -> list[Page]:
         ("describe KIND", "inputs, effects and findings of a kind, such as 'describe conductor'"),
         ("describe materials", f"{len(material_names())} materials in {len(sets())} constant sets"),
         ("describe threats", f"{len(threat_names())} named threats"),
-        ("describe tables", f"{len(limit_tables(registry))} tables of minimum sizes"),
+        ("describe tables", f"{len(registry.limit_tables)} tables of minimum sizes"),
         ("describe sources", f"{len(sources())} publications that the numbers rest on"),
         ("new KIND", "a commented case to start from"),
     ]
@@ -242,7 +242,7 @@ def _threat(registry: Registry, name: str) -> list[Page]:
 def _tables(registry: Registry) -> list[Page]:
     entries = [
         (table.name, f"{table.title} ({sum(len(c.rows) for c in table.checks)} rows)")
-        for table in limit_tables(registry)
+        for table in registry.limit_tables
     ]
     return [Page("Tables of minimum sizes", entries), *_standards(registry)]
 
@@ -255,13 +255,13 @@ def _standards(registry: Registry) -> list[Page]:
             if name == DEFAULT_STANDARD
             else "for comparison, or with standard = ...",
         )
-        for name in standards(registry)
+        for name in registry.standards
     ]
     return [Page("Standards that a case may name", entries)]
 
 
 def _table(registry: Registry, name: str) -> list[Page]:
-    known = {table.name: table for table in limit_tables(registry)}
+    known = {table.name: table for table in registry.limit_tables}
     folded = {key.casefold(): key for key in known}
     if name.casefold() not in folded:
         raise UnknownName("table", name, known)

@@ -247,7 +247,8 @@ class StruckObject(Part):
         """Keep the materials of the case, and hold the object against its own rules."""
         if isinstance(context, dict) and context.get("materials") is not None:
             self._materials = context["materials"]
-        problems = [*type(self).missing_or_extra(self.model_fields_set), *self.check()]
+        problems = list(type(self).missing_or_extra(self.model_fields_set))
+        problems += () if problems else self.check()
         if problems and not (isinstance(context, dict) and context.get("collect")):
             raise InputError(problems)
 

@@ -8,8 +8,7 @@ from functools import lru_cache
 from importlib.resources import files
 from typing import Any
 
-from strikeenergy.errors import DataError, UnknownName
-from strikeenergy.registry import Registry
+from strikeenergy.errors import DataError
 from strikeenergy.sources import Constant
 from strikeenergy.tables import constant, read_table
 
@@ -20,10 +19,8 @@ __all__ = [
     "LimitTable",
     "Row",
     "Variant",
-    "check_standard",
-    "limit_tables",
+    "built_in_tables",
     "parse_table",
-    "standards",
 ]
 
 DEFAULT_STANDARD = "IEC 62305-3:2010"
@@ -163,28 +160,8 @@ def parse_table(raw: Mapping[str, Any]) -> LimitTable:
 
 
 @lru_cache(maxsize=1)
-def _built_in() -> tuple[LimitTable, ...]:
+def built_in_tables() -> tuple[LimitTable, ...]:
+    """Return the tables that ship with the program."""
     folder = files("strikeenergy") / "data" / "limits"
     names = sorted(f.name for f in folder.iterdir() if f.name.endswith(".toml"))
     return tuple(parse_table(read_table("strikeenergy", "data", "limits", name)) for name in names)
-
-
-def limit_tables(registry: Registry) -> list[LimitTable]:
-    """Return the built-in tables and those that plugins bring."""
-    return [*_built_in(), *(parse_table(raw) for raw in registry.tables)]
-
-
-def standards(registry: Registry) -> list[str]:
-    """Return the standards that a case may name."""
-    return list(dict.fromkeys(table.standard for table in limit_tables(registry)))
-
-
-def check_standard(name: str, registry: Registry) -> str:
-    """Return the standard's name.
-
-    Raises:
-        UnknownName: no table of such a standard, with the nearest names.
-    """
-    if name not in standards(registry):
-        raise UnknownName("standard", name, standards(registry))
-    return name

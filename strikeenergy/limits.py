@@ -20,7 +20,7 @@ import numpy as np
 from strikeenergy.formatting import format_quantity
 from strikeenergy.inputs import StruckObject
 from strikeenergy.lightning.flash import Flash
-from strikeenergy.limit_tables import SIZE_UNITS, Check, LimitTable, Row, limit_tables
+from strikeenergy.limit_tables import SIZE_UNITS, Check, LimitTable, Row
 from strikeenergy.plugin import Criterion, Words
 from strikeenergy.registry import Registry
 from strikeenergy.results import FindingResult, Verdict
@@ -65,7 +65,7 @@ def size_verdicts(thing: StruckObject, kind: str, registry: Registry, standard: 
     """
     if thing.is_array:
         return []
-    tables = [table for table in limit_tables(registry) if table.kind == kind]
+    tables = [table for table in registry.limit_tables if table.kind == kind]
     if not tables:
         return []
     if thing.use is None:

@@ -8,7 +8,6 @@ from typing import Any
 from strikeenergy.case import FlashSection
 from strikeenergy.inputs import Part, parts_of, summary_of, unit_of, words_of
 from strikeenergy.lightning.threats import threat_names
-from strikeenergy.limit_tables import standards
 from strikeenergy.materials import PROPERTIES, material_names, sets
 from strikeenergy.registry import Registry
 
@@ -26,7 +25,7 @@ def new_case(registry: Registry, name: str) -> str:
         "#:schema ./strikeenergy-case.schema.json",
         "# Lines that begin with '# ' and a key are what else may be said; take the '# ' away to use one.",
         'title = "My case"',
-        "# standard = " + " | ".join(f'"{s}"' for s in standards(registry)),
+        "# standard = " + " | ".join(f'"{s}"' for s in registry.standards),
         "",
         "[flash]",
         'threat = "LPL I"        # or the strokes themselves:',
@@ -135,7 +134,7 @@ def case_schema(registry: Registry) -> dict[str, Any]:
         "required": ["flash", "object"],
         "properties": {
             "title": {"type": "string", "description": "What the case is about."},
-            "standard": {"enum": standards(registry), "description": "The standard that decides."},
+            "standard": {"enum": registry.standards, "description": "The standard that decides."},
             "flash": flash,
             "object": {"type": "array", "minItems": 1, "items": {"oneOf": branches}},
             "materials": own_materials,

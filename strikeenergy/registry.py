@@ -17,6 +17,7 @@ import pluggy
 
 from strikeenergy.errors import PluginError, UnknownName
 from strikeenergy.inputs import StruckObject
+from strikeenergy.limit_tables import LimitTable, built_in_tables, parse_table
 from strikeenergy.plugin import API_VERSION, Effect, HookSpecs
 
 __all__ = ["GROUP", "PluginInfo", "Registry", "load", "short_reason"]
@@ -45,7 +46,8 @@ class Registry:
     plugins: list[PluginInfo] = field(default_factory=list)
     kinds: dict[str, type[StruckObject]] = field(default_factory=dict)
     effects: list[Effect] = field(default_factory=list)
-    tables: list[Mapping[str, Any]] = field(default_factory=list)
+    tables: list[LimitTable] = field(default_factory=list)
+    """Those that plugins bring; :attr:`limit_tables` has the built-in ones as well."""
     failures: list[PluginError] = field(default_factory=list)
     owners: dict[str, PluginInfo] = field(default_factory=dict)
     """``kind conductor``, ``effect conductor.heating``, ``table ...`` to the plugin that brought it."""
@@ -59,6 +61,26 @@ class Registry:
         if name not in self.kinds:
             raise UnknownName("kind", name, self.kinds)
         return self.kinds[name]
+
+    @property
+    def limit_tables(self) -> list[LimitTable]:
+        """Every table of minimum sizes: the built-in ones and those that plugins bring."""
+        return [*built_in_tables(), *self.tables]
+
+    @property
+    def standards(self) -> list[str]:
+        """The standards that a case may name."""
+        return list(dict.fromkeys(table.standard for table in self.limit_tables))
+
+    def standard(self, name: str) -> str:
+        """Return the name of a standard.
+
+        Raises:
+            UnknownName: there is no table of it; with the nearest names.
+        """
+        if name not in self.standards:
+            raise UnknownName("standard", name, self.standards)
+        return name
 
     def effects_of(self, kind: type[StruckObject]) -> list[Effect]:
         """Return the effects that apply to a kind, in a fixed order."""
@@ -198,12 +220,18 @@ def _take(
         elif free(f"effect {kind_name(effect.kind)}.{effect.name}"):
             registry.effects.append(effect)
             effects.append(f"{kind_name(effect.kind)}.{effect.name}")
-    for table in listed["strikeenergy_tables"]:
-        if not isinstance(table, Mapping) or "name" not in table:
-            refuse("a table is listed that is no mapping with a name")
-        elif free(f"table {table['name']}"):
-            registry.tables.append({**table, "plugin": info.name})
-            tables.append(str(table["name"]))
+    for raw in listed["strikeenergy_tables"]:
+        if not isinstance(raw, Mapping):
+            refuse(f"{raw!r} is listed as a table and is no mapping")
+            continue
+        try:
+            table = parse_table(raw)
+        except Exception as error:  # the content is the plugin's own
+            refuse(short_reason(error))
+            continue
+        if free(f"table {table.name}"):
+            registry.tables.append(table)
+            tables.append(table.name)
     registry.plugins.append(
         PluginInfo(
             info.name,

@@ -71,7 +71,7 @@ def constant(
     Raises:
         DataError: no value, a wrong unit, no source.
     """
-    full: dict[str, Any] = {**(defaults or {}), **({"value": entry} if isinstance(entry, str) else entry)}
+    full: dict[str, Any] = {**(defaults or {}), **(entry if isinstance(entry, Mapping) else {"value": entry})}
     try:
         value = cast(float, read(full["value"], unit))
         given = own_source or source(str(full["source"]), str(full.get("locator", "")))

@@ -15,6 +15,8 @@ from strikeenergy.api import (
     Given,
     Material,
     Note,
+    OutsideValidity,
+    Standing,
     Value,
     Words,
     effect,
@@ -97,7 +99,7 @@ def heating(conductor: Conductor, flash: Flash, note: Note) -> Heating:
         "Δθ_m", "T_m - T_0", "K", meaning="rise to the melting point", T_m=melting, T_0=start
     )
     if np.any(np.asarray(to_melt) <= 0):
-        note.remark("the conductor is at or above its melting point before the stroke")
+        raise OutsideValidity("the conductor is at or above its melting point before the stroke")
     action = note.formula(
         "s",
         adiabatic.ACTION_TO_CONSTANT if flat else adiabatic.ACTION_TO,
@@ -106,7 +108,7 @@ def heating(conductor: Conductor, flash: Flash, note: Note) -> Heating:
         source=DERIVED,
         C=heat_capacity,
         rho0=rho0,
-        rise=Given(np.maximum(to_melt, 0.0), "K"),
+        rise=Given(to_melt, "K"),
         **({} if flat else {"alpha": alpha}),
     )
     s = Given(action, "A**2*s/m**4")
@@ -201,6 +203,8 @@ def _at_start(conductor: Conductor, metal: Material, note: Note) -> tuple[Any, A
         metal["temperature_coefficient"],
         metal["reference_temperature"],
     )
+    if reference.standing is Standing.ASSUMED:
+        note.assume(reference)
     at_start: dict[str, Any] = {
         "rho_r": rho,
         "alpha_r": alpha,

@@ -217,7 +217,7 @@ class Conductor(OfMaterial):
             found["diameter"] = self.diameter
         elif self.outer_diameter is not None:
             found["diameter"] = self.outer_diameter
-        elif self.facet("form") in ("solid round", "rod"):
+        elif self.facet("form") in ("solid round", "rod", None):
             found["diameter"] = 2 * np.sqrt(np.asarray(self.area) / math.pi)
         if self.thickness is not None:
             found["thickness"] = self.thickness

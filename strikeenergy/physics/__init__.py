@@ -1,0 +1,1 @@
+"""The laws: pure functions of SI numbers or arrays. No objects, no files, no units library."""
