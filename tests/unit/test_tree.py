@@ -176,6 +176,12 @@ def test_through_a_case(registry):
     assert not result.verdicts
 
 
+def test_the_example_of_a_new_case_runs(registry):
+    result = one(registry, kind="tree", name="tree", **Tree.example_fields)
+    assert not result.failures
+    assert all(finding.value is not None for finding in result.findings.values())
+
+
 def test_a_share_of_the_flash(registry):
     whole = one(registry, flash=strokes(**MEDIAN), **{"name": "oak", **OAK})
     half = one(registry, flash=strokes(**MEDIAN), **{"name": "oak", **OAK, "share": 0.5})

@@ -2,12 +2,12 @@
 
 Two kinds of numbers stand here:
 
-* The worked examples (a coast Douglas-fir of 0.60 m and a white oak of 0.50 m, seven strokes) were computed by hand
-  from the assumed parameters, outside of this program. They hold the program to its own model; they do not
-  validate the model, which nothing published calibrates.
-* Rows of the Wood Handbook (FPL-GTR-190 Table 5-3, FPL-GTR-282 Table 4-1) and bark factors of US federal
-  fire-effects models are typed a second time. The green strengths of bur oak and ponderosa pine and the strengths
-  at 12 % were read; the other green strengths are recalled (high confidence).
+* The worked examples (a coast Douglas-fir of 0.60 m and a white oak of 0.50 m, five strokes on two paths) were
+  computed by hand from the assumed parameters, outside of this program. They hold the program to its own model;
+  they do not validate the model, which nothing published calibrates.
+* Rows of the Wood Handbook (FPL-GTR-190 Tables 5-3a and 5-3b, FPL-GTR-282 Table 4-1) and bark factors of US
+  federal fire-effects models, typed a second time. The strengths at 12 % moisture were read, the green ones are
+  recalled (high confidence).
 
 Stroke values: Berger et al. 1975 and IEC 62305-1 Table 3, median and 5 % points, rounded (from memory, high).
 """
