@@ -252,9 +252,7 @@ def _own_value(
     entry: Any, path: tuple[str | int, ...], unit: str, problems: list[Problem]
 ) -> tuple[Any, str]:
     """Return value text and source of a property of an own material."""
-    write = f'write {path[-1]} = {{ value = "1 {unit}", source = "where it comes from" }}'.replace(
-        "1 }", "1 }"
-    )
+    write = f'write {path[-1]} = {{ value = "1 {unit}", source = "where it comes from" }}'
     if not isinstance(entry, Mapping):
         problems.append(
             Problem(
@@ -271,6 +269,7 @@ def _own_value(
     value = entry.get("value")
     if not isinstance(source, str) or not source.strip():
         problems.append(Problem("the source is missing", write, path))
+        return None, ""
     if "unit" in entry and isinstance(value, (int, float)) and not isinstance(value, bool):
         value = f"{value!r} {entry['unit']}"
     if value is None:

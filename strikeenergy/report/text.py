@@ -61,8 +61,11 @@ def _flash_text(flash: Flash) -> str:
     values = []
     data = flash.to_dict()
     for name, word in (("peak", "peak"), ("charge", "charge"), ("specific_energy", "W/R")):
-        if data[name]["value"] is not None:
-            values.append(f"{word} {format_quantity(data[name]['value'], data[name]['unit'])}")
+        value = data[name]["value"]
+        if isinstance(value, list):
+            values.append(f"{word} {len(value)} values")
+        elif value is not None:
+            values.append(f"{word} {format_quantity(value, data[name]['unit'])}")
     source = f" ({flash.source}; {flash.standing})" if flash.source else ""
     strokes = f"{len(flash.strokes)} stroke" + ("s" if len(flash.strokes) > 1 else "")
     return f"{flash.name or 'as given'}: {', '.join([*values, strokes])}{source}"
