@@ -21,9 +21,23 @@ from strikeenergy.sources import Constant, Source, Standing
 
 __all__ = ["Formula", "Given", "Note", "Step", "show_symbol"]
 
+
+def _expm1(x: Any, out: Any = None) -> Any:
+    """exp(x) − 1, exact for small x as well. On large arrays the quick exp serves wherever it loses nothing."""
+    if not isinstance(x, np.ndarray) or x.size < 4096:
+        return np.expm1(x) if out is None else np.expm1(x, out=out)
+    small = (x < 0.01) & (x > -0.01)  # beyond it, exp(x) − 1 is good to 1e-14
+    exact = np.expm1(x[small]) if small.any() else None
+    result = np.exp(x, out=out)
+    result -= 1.0
+    if exact is not None:
+        result[small] = exact
+    return result
+
+
 _FUNCTIONS: dict[str, Callable[..., Any]] = {
     "exp": np.exp,
-    "expm1": np.expm1,
+    "expm1": _expm1,
     "log": np.log,
     "log1p": np.log1p,
     "sqrt": np.sqrt,
@@ -73,6 +87,9 @@ def show_symbol(name: str) -> str:
     return name
 
 
+_BLOCK = 1 << 14
+
+
 class Formula:
     """A closed form that computes itself and prints itself.
 
@@ -95,8 +112,18 @@ class Formula:
         self.names = tuple(name for name in names if name not in _CONSTANTS)
 
     def __call__(self, **values: Any) -> Any:
-        """Compute, on numbers, arrays (they broadcast) or pint quantities."""
-        return self._run(values)
+        """Compute, on numbers, arrays (they broadcast) or pint quantities.
+
+        Long arrays are worked through in blocks that fit the processor's cache: intermediate results never reach memory.
+        """
+        long = [v for v in values.values() if type(v) is np.ndarray and v.ndim == 1 and v.size > 2 * _BLOCK]
+        if not long or any(np.shape(v) not in ((), long[0].shape) for v in values.values()):
+            return self._run(values)
+        out = np.empty(long[0].shape)
+        for begin in range(0, out.size, _BLOCK):
+            part = slice(begin, begin + _BLOCK)
+            out[part] = self._run({name: v[part] if np.ndim(v) else v for name, v in values.items()})
+        return out
 
     def text(self) -> str:
         """Print with symbols."""
@@ -131,13 +158,60 @@ def _compile(node: ast.expr, names: dict[str, None]) -> Callable[[dict[str, Any]
     if isinstance(node, ast.BinOp) and type(node.op) in _BINARY:
         apply = _BINARY[type(node.op)][2]
         left, right = _compile(node.left, names), _compile(node.right, names)
+        if _makes_new(node.left) and type(node.op) in _IN_PLACE:
+            in_place = _IN_PLACE[type(node.op)]
+
+            def run(values: dict[str, Any]) -> Any:
+                a, b = left(values), right(values)
+                # A large intermediate result is overwritten instead of copied: most of the cost is in the memory.
+                if type(a) is np.ndarray and a.dtype == np.float64 and _fits(b, a):
+                    return in_place(a, b, out=a)
+                return apply(a, b)
+
+            return run
         return lambda values: apply(left(values), right(values))
     if isinstance(node, ast.Call) and isinstance(node.func, ast.Name) and not node.keywords:
         function = _FUNCTIONS.get(node.func.id)
         if function is not None:
             arguments = [_compile(argument, names) for argument in node.args]
+            if len(arguments) == 1 and _makes_new(node.args[0]):
+                (argument,) = arguments
+
+                def call(values: dict[str, Any]) -> Any:
+                    a = argument(values)
+                    if type(a) is np.ndarray and a.dtype == np.float64 and a.ndim:
+                        return function(a, out=a)
+                    return function(a)
+
+                return call
             return lambda values: function(*(argument(values) for argument in arguments))
     raise ValueError(f"{ast.unparse(node)!r} cannot stand in a formula")
+
+
+_IN_PLACE: dict[type, Callable[..., Any]] = {
+    ast.Add: np.add,
+    ast.Sub: np.subtract,
+    ast.Mult: np.multiply,
+    ast.Div: np.divide,
+}
+
+
+def _makes_new(node: ast.expr) -> bool:
+    """Whether a node's result is an array of its own, which nobody else holds."""
+    return isinstance(node, (ast.BinOp, ast.Call))
+
+
+def _fits(b: Any, a: np.ndarray[Any, Any]) -> bool:
+    """Whether ``b`` can be worked into ``a`` without changing its shape or kind."""
+    if a.ndim == 0:
+        return False
+    if isinstance(b, (int, float)):
+        return True
+    return (
+        isinstance(b, (np.ndarray, np.generic))
+        and b.dtype == np.float64
+        and (b.ndim == 0 or b.shape == a.shape)
+    )
 
 
 def _print(node: ast.expr, show: Callable[[str], str]) -> tuple[str, int]:

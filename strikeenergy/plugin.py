@@ -28,6 +28,7 @@ __all__ = [
     "Finding",
     "Findings",
     "HookSpecs",
+    "Later",
     "Validity",
     "Value",
     "Words",
@@ -99,12 +100,29 @@ class Words:
     names: tuple[str, ...]
 
 
-Value = Quantity | Bracket | Words | bool | str | None
+@dataclass(frozen=True)
+class Later:
+    """A value that is computed when somebody first asks for it: what follows from large arrays, and is rarely wanted."""
+
+    compute: Callable[[], Any]
+
+
+Value = Quantity | Bracket | Words | Later | bool | str | None
 """What a finding may be. None: it does not apply or cannot be given; the note says why."""
 
 
 class Findings:
-    """Base of results classes: frozen dataclasses whose every field is ``Annotated[Value, Finding(...)]``."""
+    """Base of results classes: frozen dataclasses whose every field is ``Annotated[Value, Finding(...)]``.
+
+    A field may be given as :class:`Later`; whoever reads it sees the value.
+    """
+
+    def __getattribute__(self, name: str) -> Any:
+        value = object.__getattribute__(self, name)
+        if isinstance(value, Later):
+            value = value.compute()
+            object.__setattr__(self, name, value)
+        return value
 
 
 def findings_of(results: type[Findings]) -> dict[str, Finding]:

@@ -124,8 +124,7 @@ def _canonical(text: str) -> str:
     last = "start"
     position = 0
     rest = text.strip()
-    if rest.startswith("1/"):
-        rest = rest[1:]
+    rest = re.sub(r"^1\s*/", "/", rest)
     if rest.startswith("/"):
         out.append("1")
         last = "name"

@@ -13,6 +13,7 @@ from strikeenergy.api import (
     Findings,
     Flash,
     Given,
+    Later,
     Material,
     Note,
     OutsideValidity,
@@ -122,22 +123,13 @@ def heating(conductor: Conductor, flash: Flash, note: Note) -> Heating:
         s=s,
         q=q,
     )
-    section = note.formula(
-        "q_m",
-        adiabatic.SECTION_FOR,
-        "m**2",
-        meaning="section that just reaches melting",
-        source=DERIVED,
-        finding="section_to_melt",
-        show="mm**2",
-        w=w,
-        s=s,
-    )
-    full, fraction = _melting(metal, note, w, q, Given(onset, "J/ohm"), rho0, alpha, to_melt)
-
     molten = np.asarray(w.value) > np.asarray(onset) * (1 + _ROUNDING)
-    rise: Any = None
-    if molten.ndim or not molten:
+    full, fraction = _melting(
+        metal, note, w, q, Given(onset, "J/ohm"), rho0, alpha, to_melt, bool(molten.any())
+    )
+
+    rise: Any = np.full(molten.shape, np.nan) if molten.ndim and molten.all() else None
+    if not molten.all():
         # Beyond the onset the closed form runs away (10^60 K and more): it is computed and thrown away for arrays.
         with np.errstate(over="ignore"):
             rise = note.formula(
@@ -161,13 +153,13 @@ def heating(conductor: Conductor, flash: Flash, note: Note) -> Heating:
     )
     return Heating(
         temperature_rise=rise,
-        end_temperature=None if rise is None else conductor.start + rise,
+        end_temperature=_end(conductor.start, rise),
         state=state,
         melted_fraction=fraction,
         specific_energy_to_melt=onset,
         specific_energy_to_melt_fully=full,
-        melt_margin=_ratio(onset, w.value, note),
-        section_to_melt=section,
+        melt_margin=_margin(onset, w.value, note),
+        section_to_melt=_section(w, s, note),
         resistance=resistance,
         dissipated_energy=energy,
     )
@@ -245,17 +237,24 @@ def _at_start(conductor: Conductor, metal: Material, note: Note) -> tuple[Any, A
 
 
 def _melting(
-    metal: Material, note: Note, w: Given, q: Given, onset: Given, rho0: Any, alpha: Any, to_melt: Any
+    metal: Material,
+    note: Note,
+    w: Given,
+    q: Given,
+    onset: Given,
+    rho0: Any,
+    alpha: Any,
+    to_melt: Any,
+    any_molten: bool,
 ) -> tuple[Any, Any]:
     """Return the specific energy to the end of melting and the melted fraction, where the set has a latent heat."""
     if not metal.has("latent_heat", "density"):
         lacks = "latent heat" if not metal.has("latent_heat") else "density"
         for name in ("specific_energy_to_melt_fully", "melted_fraction"):
             note.unknown(name, f"the set {metal.constants!r} has no {lacks} of {metal.row}")
-        if np.all(np.asarray(w.value) <= np.asarray(onset.value)):
+        if not any_molten:
             note.unknowns.pop("melted_fraction", None)
-            return None, 0.0
-        return None, None
+        return None, None if any_molten else 0.0
     rho_m = note.formula(
         "ρ_m",
         "rho0*(1 + alpha*rise)",
@@ -278,7 +277,7 @@ def _melting(
         L=metal["latent_heat"],
         rho_m=Given(rho_m, "ohm*m"),
     )
-    if np.all(np.asarray(w.value) <= np.asarray(onset.value)):
+    if not any_molten:
         return full, 0.0
     fraction = note.formula(
         "f",
@@ -299,18 +298,51 @@ def _state(molten: Any, fraction: Any) -> Value:
         if not molten:
             return "solid"
         return "molten" if fraction is not None and float(fraction) >= 1 else "melting"
-    codes = molten.astype(np.int8)
+    codes = molten.view(np.int8)
     if fraction is not None and np.ndim(fraction):
         codes[np.asarray(fraction) >= 1] = 2
     return Words(codes, STATES)
 
 
-def _ratio(limit: Any, value: Any, note: Note) -> Any:
-    if np.ndim(value) == 0 and value == 0:
-        note.unknown("melt_margin", "there is no current")
+def _end(start: Any, rise: Any) -> Any:
+    """Return the end temperature; for many strokes only when it is asked for."""
+    if rise is None:
         return None
-    with np.errstate(divide="ignore"):
-        return limit / value
+    return Later(lambda: start + rise) if np.ndim(rise) else start + rise
+
+
+def _section(w: Given, s: Given, note: Note) -> Any:
+    """Return the section that just reaches melting; for many strokes only when it is asked for."""
+
+    def compute() -> Any:
+        return note.formula(
+            "q_m",
+            adiabatic.SECTION_FOR,
+            "m**2",
+            meaning="section that just reaches melting",
+            source=DERIVED,
+            finding="section_to_melt",
+            show="mm**2",
+            w=w,
+            s=s,
+        )
+
+    return Later(compute) if np.ndim(w.value) else compute()
+
+
+def _margin(onset: Any, applied: Any, note: Note) -> Any:
+    """Return the onset of melting over what is applied; for many strokes only when it is asked for."""
+    if np.ndim(applied) == 0:
+        if applied == 0:
+            note.unknown("melt_margin", "there is no current")
+            return None
+        return onset / applied
+
+    def compute() -> Any:
+        with np.errstate(divide="ignore"):
+            return onset / applied
+
+    return Later(compute)
 
 
 def _without_melting(

@@ -604,7 +604,7 @@ def population(
         positive_share: share of positive flashes.
         correlation: of peak, charge and W/R.
         strokes: set of stroke numbers (``"CIGRE TB 549"``, ``"Poelman 2021"``).
-        continuing: set of continuing-current shares (``"LS1989"``, ``"video"``: high-speed camera
+        continuing: set of continuing-current shares (``"LS1989"``, ``"Saba 2010"``: shares counted in field
             observations).
         bound: the charge in W/R <= I·Q, see :class:`JointLaw`.
 

@@ -8,6 +8,7 @@ import subprocess
 import sys
 
 import pytest
+
 from helpers import ROOT, as_json, command, process
 
 CASE = ROOT / "cases" / "boathouse.toml"
@@ -92,12 +93,21 @@ def test_every_commented_line_of_a_new_case_works():
     tried = 0
     for number, line in enumerate(lines):
         match = re.match(r"# (\w+) = ([^|]*?)(?: \| .*)?(?:    # .*)?$", line)
-        if not match or number < lines.index("[[object]]") or any(c.startswith("# [") for c in lines[lines.index("[[object]]") : number]):
+        if (
+            not match
+            or number < lines.index("[[object]]")
+            or any(c.startswith("# [") for c in lines[lines.index("[[object]]") : number])
+        ):
             continue
         used = [*lines]
         used[number] = f"{match[1]} = {match[2]}"
         done = command("estimate", "-", "--json", stdin="\n".join(used))
-        assert done.returncode in (0, 1) or "more than once" in done.stderr or "belong together" in done.stderr or "does not go with" in done.stderr, done.stderr
+        assert (
+            done.returncode in (0, 1)
+            or "more than once" in done.stderr
+            or "belong together" in done.stderr
+            or "does not go with" in done.stderr
+        ), done.stderr
         tried += 1
     assert tried > 8
 
@@ -176,18 +186,24 @@ def test_no_arguments_show_help():
 def test_threat_and_standard_from_the_command_line():
     assert as_json("estimate", CASE, "--threat", "LPL IV")["flash"]["peak"]["value"] == 100e3
     other = as_json("estimate", CASE, "--standard", "NFPA 780 Class I")
-    assert {v["standard"] for o in other["objects"] for v in o["verdicts"] if v["counts"] and v["sort"] == "size"} == {"NFPA 780 Class I"}
+    assert {
+        v["standard"] for o in other["objects"] for v in o["verdicts"] if v["counts"] and v["sort"] == "size"
+    } == {"NFPA 780 Class I"}
 
 
 def test_falls_short(tmp_path):
     case = tmp_path / "thin.toml"
-    case.write_text('[flash]\nthreat = "LPL I"\n[[object]]\nkind = "conductor"\nuse = "down conductor"\nmaterial = "copper"\nsection = "10 mm**2"\n')
+    case.write_text(
+        '[flash]\nthreat = "LPL I"\n[[object]]\nkind = "conductor"\nuse = "down conductor"\nmaterial = "copper"\nsection = "10 mm**2"\n'
+    )
     assert command("estimate", case, "--text").returncode == 1
 
 
 def test_no_model_covers_it(tmp_path):
     case = tmp_path / "ti.toml"
-    case.write_text('[flash]\nthreat = "LPL I"\n[[object]]\nkind = "sheet"\nmaterial = "titanium"\nthickness = "1 mm"\n')
+    case.write_text(
+        '[flash]\nthreat = "LPL I"\n[[object]]\nkind = "sheet"\nmaterial = "titanium"\nthickness = "1 mm"\n'
+    )
     assert command("estimate", case, "--json").returncode == 4
 
 
@@ -201,7 +217,10 @@ def test_schema_accepts_every_case_and_refuses_mistakes():
         validator.validate(tomllib.loads(case.read_text(encoding="utf-8")))
     for kind in ("conductor", "sheet", "tree"):
         validator.validate(tomllib.loads(command("new", kind).stdout))
-    wrong = {"flash": {"threat": "LPL V"}, "object": [{"kind": "conductor", "material": "copper", "lenght": "1 m"}]}
+    wrong = {
+        "flash": {"threat": "LPL V"},
+        "object": [{"kind": "conductor", "material": "copper", "lenght": "1 m"}],
+    }
     assert len(list(validator.iter_errors(wrong))) == 2
 
 
@@ -209,7 +228,11 @@ def test_plugins():
     done = command("plugins")
     assert done.returncode == 0
     assert "effects conductor.heating" in " ".join(done.stdout.split())
-    assert [p["name"] for p in json.loads(command("plugins", "--json").stdout)["plugins"]] == ["conductor", "sheet", "tree"]
+    assert [p["name"] for p in json.loads(command("plugins", "--json").stdout)["plugins"]] == [
+        "conductor",
+        "sheet",
+        "tree",
+    ]
 
 
 def test_a_fault_of_ours_has_its_own_code_and_no_traceback():
@@ -223,20 +246,35 @@ def test_a_fault_of_ours_has_its_own_code_and_no_traceback():
     assert done.returncode == 70
     assert "fault of the program" in done.stderr
     assert "Traceback" not in done.stderr
-    loud = subprocess.run([sys.executable, "-c", script], capture_output=True, text=True, cwd=ROOT, env={**os.environ, "STRIKEENERGY_TRACEBACK": "1"})
+    loud = subprocess.run(
+        [sys.executable, "-c", script],
+        capture_output=True,
+        text=True,
+        cwd=ROOT,
+        env={**os.environ, "STRIKEENERGY_TRACEBACK": "1"},
+    )
     assert "Traceback" in loud.stderr
 
 
 def test_closed_pipe_is_quiet():
     done = subprocess.run(
-        f"{sys.executable} -m strikeenergy estimate {CASE} --text | head -1", shell=True, capture_output=True, text=True, cwd=ROOT
+        f"{sys.executable} -m strikeenergy estimate {CASE} --text | head -1",
+        shell=True,
+        capture_output=True,
+        text=True,
+        cwd=ROOT,
     )
     assert done.stdout.strip() == "Boathouse on the lake"
     assert "Traceback" not in done.stderr
 
 
 def test_another_encoding_of_the_console_does_not_matter():
-    done = subprocess.run([sys.executable, "-m", "strikeenergy", "estimate", str(CASE), "--text"], capture_output=True, cwd=ROOT, env={**os.environ, "PYTHONIOENCODING": "cp1252"})
+    done = subprocess.run(
+        [sys.executable, "-m", "strikeenergy", "estimate", str(CASE), "--text"],
+        capture_output=True,
+        cwd=ROOT,
+        env={**os.environ, "PYTHONIOENCODING": "cp1252"},
+    )
     assert done.returncode == 0, done.stderr
     assert "MJ/Ω" in done.stdout.decode("utf-8")
 

@@ -95,13 +95,23 @@ class TestRuns:
         many = Flash((Stroke(peak=peaks, charge=peaks * 2e-4, specific_energy=peaks**2 * 8e-5),))
         together = dict(values(effect(thing, many)))
         for index, peak in enumerate(peaks.tolist()):
-            alone = dict(values(effect(thing, Flash((Stroke(peak=peak, charge=peak * 2e-4, specific_energy=peak**2 * 8e-5),)))))
+            alone = dict(
+                values(
+                    effect(
+                        thing, Flash((Stroke(peak=peak, charge=peak * 2e-4, specific_energy=peak**2 * 8e-5),))
+                    )
+                )
+            )
             for name, value in alone.items():
                 both = together[name]
                 if isinstance(both, Words):
                     assert both.names[both.codes[index]] == value, name
                 elif both is not None and np.ndim(both):
-                    assert (np.isnan(both[index]) if value is None else both[index] == pytest.approx(value, rel=1e-9)), name
+                    assert (
+                        np.isnan(both[index])
+                        if value is None
+                        else both[index] == pytest.approx(value, rel=1e-9)
+                    ), name
 
     def test_declared_monotony_is_true(self, effect):
         first = dataclasses.fields(effect.results)[0].name
@@ -131,11 +141,19 @@ class TestRuns:
         for name, text in effect.kind.example_fields.items():
             mark = unit_of(effect.kind, name)
             if mark is not None and mark.unit:
-                converted[name] = quantity(getattr(plain_thing, name), "K" if mark.unit == "degC" else str(mark.unit and si(mark.unit)))
+                converted[name] = quantity(
+                    getattr(plain_thing, name),
+                    "K" if mark.unit == "degC" else str(mark.unit and si(mark.unit)),
+                )
             else:
                 converted[name] = text
-        other = make_case({"flash": {"threat": "LPL II"}, "object": [{"kind": kind_name(effect.kind), **converted}]}, registry=REGISTRY).objects[0]
-        for (name, a), (_, b) in zip(values(effect(plain_thing, FLASH)), values(effect(other, FLASH)), strict=True):
+        other = make_case(
+            {"flash": {"threat": "LPL II"}, "object": [{"kind": kind_name(effect.kind), **converted}]},
+            registry=REGISTRY,
+        ).objects[0]
+        for (name, a), (_, b) in zip(
+            values(effect(plain_thing, FLASH)), values(effect(other, FLASH)), strict=True
+        ):
             assert b == (pytest.approx(a, rel=1e-9) if isinstance(a, float) else a), name
 
 
@@ -148,7 +166,10 @@ def si(unit):
 
 @pytest.mark.parametrize("kind", KINDS, ids=kind_name)
 def test_example_case_round_trips_to_json(kind):
-    case = make_case({"flash": {"threat": "LPL I"}, "object": [{"kind": kind_name(kind), **kind.example_fields}]}, registry=REGISTRY)
+    case = make_case(
+        {"flash": {"threat": "LPL I"}, "object": [{"kind": kind_name(kind), **kind.example_fields}]},
+        registry=REGISTRY,
+    )
     result = engine.estimate(case)
     assert not result.all_failures
     data = result.to_dict()
@@ -160,7 +181,11 @@ def test_example_case_round_trips_to_json(kind):
 def test_bad_input_is_refused(kind, bad):
     from strikeenergy.case import CaseError
 
-    quantities = [name for name in kind.model_fields if (mark := unit_of(kind, name)) and mark.unit and mark.unit != "degC"]
+    quantities = [
+        name
+        for name in kind.model_fields
+        if (mark := unit_of(kind, name)) and mark.unit and mark.unit != "degC"
+    ]
     assert quantities
     for name in quantities:
         unit = unit_of(kind, name).unit
@@ -173,5 +198,17 @@ def test_no_damage_without_current():
     for kind in KINDS:
         for effect in REGISTRY.effects_of(kind):
             for name, value in values(effect(example(kind), nothing)):
-                if any(word in name for word in ("rise", "volume", "radius", "force", "pressure", "speed", "dissipated", "melted_fraction")):
+                if any(
+                    word in name
+                    for word in (
+                        "rise",
+                        "volume",
+                        "radius",
+                        "force",
+                        "pressure",
+                        "speed",
+                        "dissipated",
+                        "melted_fraction",
+                    )
+                ):
                     assert not value, (kind, name)

@@ -84,7 +84,11 @@ def test_round_trip(metal, section, energy, start):
     found = heat(metal, section, energy, start)
     assume(found.temperature_rise is not None)
     metal_ = conductor(metal, section).substance
-    at = {"T": start, "T_r": metal_["reference_temperature"].value, "alpha_r": metal_["temperature_coefficient"].value}
+    at = {
+        "T": start,
+        "T_r": metal_["reference_temperature"].value,
+        "alpha_r": metal_["temperature_coefficient"].value,
+    }
     back = adiabatic.ACTION_TO(
         C=metal_["density"].value * metal_["heat_capacity"].value,
         alpha=adiabatic.COEFFICIENT_AT(**at),
@@ -109,12 +113,17 @@ def test_enthalpy_never_falls_and_fraction_means_melting(metal, section, energy,
     assert (0 < found.melted_fraction < 1) == (found.state == "melting")
     assert found.specific_energy_to_melt < found.specific_energy_to_melt_fully
     more = heat(metal, section, energy * 1.5, start)
-    assert ("solid", "melting", "molten").index(more.state) >= ("solid", "melting", "molten").index(found.state)
+    assert ("solid", "melting", "molten").index(more.state) >= ("solid", "melting", "molten").index(
+        found.state
+    )
 
 
 @given(sections, energies)
 def test_order_of_the_metals(section, energy):
-    rises = [heat(metal, section, energy).temperature_rise for metal in ("copper", "aluminium", "mild steel", "stainless steel")]
+    rises = [
+        heat(metal, section, energy).temperature_rise
+        for metal in ("copper", "aluminium", "mild steel", "stainless steel")
+    ]
     assume(all(value is not None for value in rises))
     assert rises == sorted(rises)
 
@@ -168,7 +177,9 @@ def test_array_is_the_loop(many, section, metal):
 @given(currents, lengths, st.floats(0.2, 5.0))
 def test_force_scales_with_current_squared_and_distance(current, distance, k):
     base = magnetics.PARALLEL_PER_LENGTH(i2=current**2, d=distance)
-    assert magnetics.PARALLEL_PER_LENGTH(i2=(k * current) ** 2, d=distance) == pytest.approx(k**2 * base, rel=1e-12)
+    assert magnetics.PARALLEL_PER_LENGTH(i2=(k * current) ** 2, d=distance) == pytest.approx(
+        k**2 * base, rel=1e-12
+    )
     assert magnetics.PARALLEL_PER_LENGTH(i2=current**2, d=k * distance) == pytest.approx(base / k, rel=1e-12)
 
 
@@ -177,7 +188,9 @@ def test_finite_is_below_infinite_and_tends_to_it(current, distance, length):
     infinite = magnetics.PARALLEL_PER_LENGTH(i2=current**2, d=distance) * length
     assert 0 < magnetics.PARALLEL_FINITE(i2=current**2, d=distance, l=length) <= infinite
     long = 1e4 * distance
-    ratio = magnetics.PARALLEL_FINITE(i2=1.0, d=distance, l=long) / (magnetics.PARALLEL_PER_LENGTH(i2=1.0, d=distance) * long)
+    ratio = magnetics.PARALLEL_FINITE(i2=1.0, d=distance, l=long) / (
+        magnetics.PARALLEL_PER_LENGTH(i2=1.0, d=distance) * long
+    )
     assert ratio == pytest.approx(1, abs=2e-4)
 
 
@@ -191,7 +204,9 @@ def test_finite_force_is_the_slope_of_the_mutual_inductance(current, distance, l
 
     step = 1e-4 * distance
     slope = (mutual(distance + step) - mutual(distance - step)) / (2 * step)
-    assert magnetics.PARALLEL_FINITE(i2=current**2, d=distance, l=length) == pytest.approx(-slope * current**2, rel=1e-4)
+    assert magnetics.PARALLEL_FINITE(i2=current**2, d=distance, l=length) == pytest.approx(
+        -slope * current**2, rel=1e-4
+    )
 
 
 @given(lengths, log_uniform(1e-3, 1e-2), st.floats(2.0, 100.0))
@@ -200,7 +215,11 @@ def test_bend_is_the_integral_of_its_profile(leg, start, factor):
 
     end = start * factor
     # over ln x, where the profile is smooth
-    whole = quad(lambda u: magnetics.BEND_PER_LENGTH(i2=1.0, x=math.exp(u), l=leg) * math.exp(u), math.log(start), math.log(end))[0]
+    whole = quad(
+        lambda u: magnetics.BEND_PER_LENGTH(i2=1.0, x=math.exp(u), l=leg) * math.exp(u),
+        math.log(start),
+        math.log(end),
+    )[0]
     assert magnetics.BEND(i2=1.0, x1=start, x2=end, l=leg) == pytest.approx(whole, rel=1e-8)
 
 
@@ -219,7 +238,9 @@ def test_force_is_symmetric_in_the_shares(one, two, current, distance):
     flash = Flash((Stroke(peak=current, specific_energy=current**2 * 1e-4),))
 
     def force(own, other):
-        thing = conductor("copper", 1e-8, share=own, neighbour=({"spacing": quantity(distance, "m"), "share": other},))
+        thing = conductor(
+            "copper", 1e-8, share=own, neighbour=({"spacing": quantity(distance, "m"), "share": other},)
+        )
         return forces(thing, flash.through(own)).force_per_length
 
     assert force(one, two) == pytest.approx(force(two, one), rel=1e-12)

@@ -21,7 +21,9 @@ LAWS = [
 
 def reread(text, values):
     """Evaluate the printed text with Python's own grammar: an independent reading of it."""
-    text = text.replace("·", "*").replace("−", "-").replace("^", "**").replace("√", "sqrt").replace("µ0", "mu0")
+    text = (
+        text.replace("·", "*").replace("−", "-").replace("^", "**").replace("√", "sqrt").replace("µ0", "mu0")
+    )
     text = text.replace("ln(", "log(").replace("π", "pi").replace("max(", "max(").replace("min(", "min(")
     scope = {"exp": math.exp, "log": math.log, "sqrt": math.sqrt, "pi": math.pi, "mu0": 4e-7 * math.pi}
     scope |= {"max": max, "min": min, "asinh": math.asinh, "atan": math.atan}

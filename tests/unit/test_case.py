@@ -118,7 +118,9 @@ def test_all_mistakes_at_once_with_line_object_and_cure():
     ]
     for said in expected:
         assert any(line.startswith(said) for line in lines), said
-    assert len(lines) == len(expected), [line for line in lines if not any(line.startswith(e) for e in expected)]
+    assert len(lines) == len(expected), [
+        line for line in lines if not any(line.startswith(e) for e in expected)
+    ]
 
 
 @pytest.mark.parametrize(
@@ -153,7 +155,10 @@ def test_syntax_errors(line, said):
         ("[[flash.stroke]]\npolarity = 'negative'\n", "no peak, charge or specific energy"),
         ("[flash]\nstroke = 5\n", "[[flash.stroke]]"),
         ("[[flash.stroke]]\npeak = '0 kA'\n", "must be above 0 kA"),
-        ("[[flash.stroke]]\npeak = '35 kA'\ncharge = '16 C'\nspecific_energy = '650 kJ/ohm'\n", "c.toml:4: flash.stroke 1.specific_energy: no current can have this"),
+        (
+            "[[flash.stroke]]\npeak = '35 kA'\ncharge = '16 C'\nspecific_energy = '650 kJ/ohm'\n",
+            "c.toml:4: flash.stroke 1.specific_energy: no current can have this",
+        ),
     ],
 )
 def test_wrong_shapes(text, said):
@@ -161,7 +166,9 @@ def test_wrong_shapes(text, said):
 
 
 def test_strokes():
-    case = read_case("[[flash.stroke]]\npeak='30 kA'\npolarity='negative'\n[[flash.stroke]]\ncharge='100 C'\nduration='0.4 s'\nstart='1 ms'\n[[object]]\nkind='sheet'\nmaterial='copper'\nthickness='1 mm'\n")
+    case = read_case(
+        "[[flash.stroke]]\npeak='30 kA'\npolarity='negative'\n[[flash.stroke]]\ncharge='100 C'\nduration='0.4 s'\nstart='1 ms'\n[[object]]\nkind='sheet'\nmaterial='copper'\nthickness='1 mm'\n"
+    )
     first, second = case.flash.strokes
     assert (first.peak, first.polarity, second.duration, second.start) == (30e3, -1, 0.4, 1e-3)
     assert second.is_long
@@ -232,7 +239,7 @@ def test_files_that_are_no_cases(tmp_path, name, content, said):
 
 def test_missing_file_and_directory(tmp_path):
     (tmp_path / "boathouse.toml").write_text(WHOLE)
-    with pytest.raises(CaseError, match="did you mean .*boathouse.toml"):
+    with pytest.raises(CaseError, match=r"did you mean .*boathouse\.toml"):
         load_case(tmp_path / "boathose.toml")
     with pytest.raises(CaseError, match="this is a directory"):
         load_case(tmp_path)

@@ -4,8 +4,8 @@ import math
 
 import numpy as np
 import pytest
-from helpers import one, strokes
 
+from helpers import one, strokes
 from strikeenergy import make_case, quantity
 from strikeenergy.case import CaseError
 from strikeenergy.lightning.flash import Flash, Stroke
@@ -52,7 +52,9 @@ def test_starting_hot_is_the_same_conductor_further_on():
     cold = Conductor(material="copper", section="16 mm**2")
     half = Flash((Stroke(specific_energy=5e6),))
     first = heating(cold, half)
-    second = heating(Conductor(material="copper", section="16 mm**2", start=quantity(first.end_temperature, "K")), half)
+    second = heating(
+        Conductor(material="copper", section="16 mm**2", start=quantity(first.end_temperature, "K")), half
+    )
     whole = heating(cold, Flash((Stroke(specific_energy=10e6),)))
     assert second.end_temperature == pytest.approx(whole.end_temperature, rel=1e-9)
 
@@ -67,8 +69,15 @@ def test_start_at_40_degrees():
 
 
 def test_two_strokes_without_cooling():
-    twice = one(kind="conductor", material="copper", section="16 mm**2", flash={"stroke": [{"specific_energy": "5 MJ/ohm"}] * 2})
-    once = one(kind="conductor", material="copper", section="16 mm**2", flash=strokes(specific_energy="10 MJ/ohm"))
+    twice = one(
+        kind="conductor",
+        material="copper",
+        section="16 mm**2",
+        flash={"stroke": [{"specific_energy": "5 MJ/ohm"}] * 2},
+    )
+    once = one(
+        kind="conductor", material="copper", section="16 mm**2", flash=strokes(specific_energy="10 MJ/ohm")
+    )
     assert value(twice, "temperature_rise") == pytest.approx(value(once, "temperature_rise"), rel=1e-9)
     assert any("without cooling" in text for text in twice.remarks)
 
@@ -102,7 +111,13 @@ def test_through_melting():
 
 def test_energy_closes_with_resistance_for_a_small_rise():
     # A small rise: all of R*W goes into heat, and the heat is mass times c times rise.
-    result = one(kind="conductor", material="copper", section="50 mm**2", length="10 m", flash=strokes(specific_energy="1 kJ/ohm"))
+    result = one(
+        kind="conductor",
+        material="copper",
+        section="50 mm**2",
+        length="10 m",
+        flash=strokes(specific_energy="1 kJ/ohm"),
+    )
     assert value(result, "resistance") == pytest.approx(17.8e-9 * 10 / 50e-6, rel=1e-12)
     assert value(result, "dissipated_energy") == pytest.approx(value(result, "resistance") * 1e3, rel=1e-4)
 
@@ -127,12 +142,20 @@ def test_set_without_melting_point_goes_only_as_far_as_it_is_meant():
 def test_zero_temperature_coefficient():
     given = {"source": "made up"}
     own = {name: {"value": v, **given} for name, v in (("resistivity", "44 µohm*cm"), ("temperature_coefficient", "0 1/K"), ("density", "8900 kg/m**3"), ("heat_capacity", "410 J/(kg*K)"), ("melting_temperature", "1280 degC"))}  # fmt: skip
-    case = {"flash": strokes(specific_energy="1 MJ/ohm"), "materials": {"constantan": own}, "object": [{"kind": "conductor", "material": "constantan", "section": "50 mm**2"}]}
+    case = {
+        "flash": strokes(specific_energy="1 MJ/ohm"),
+        "materials": {"constantan": own},
+        "object": [{"kind": "conductor", "material": "constantan", "section": "50 mm**2"}],
+    }
     from strikeenergy import estimate
 
     result = estimate(make_case(case)).objects[0]
-    assert value(result, "temperature_rise") == pytest.approx(1e6 * 44e-8 / (50e-6**2 * 8900 * 410), rel=1e-12)
-    assert result.findings["temperature_rise"].standing == "assumed"  # the reference temperature was not given
+    assert value(result, "temperature_rise") == pytest.approx(
+        1e6 * 44e-8 / (50e-6**2 * 8900 * 410), rel=1e-12
+    )
+    assert (
+        result.findings["temperature_rise"].standing == "assumed"
+    )  # the reference temperature was not given
 
 
 def test_above_melting_before_the_stroke():
@@ -159,23 +182,42 @@ def test_arrays_equal_scalars():
 
 def test_arrays_of_sections():
     q = np.array([16.0, 50.0])
-    result = heating(Conductor(material="copper", section=quantity(q, "mm**2")), Flash((Stroke(specific_energy=10e6),)))
+    result = heating(
+        Conductor(material="copper", section=quantity(q, "mm**2")), Flash((Stroke(specific_energy=10e6),))
+    )
     np.testing.assert_allclose(result.temperature_rise, [309.056, 21.598], rtol=1e-4)
 
 
 def test_no_current_no_damage():
-    nothing = heating(Conductor(material="copper", section="16 mm**2"), Flash((Stroke(peak=0.0, specific_energy=0.0),)))
+    nothing = heating(
+        Conductor(material="copper", section="16 mm**2"), Flash((Stroke(peak=0.0, specific_energy=0.0),))
+    )
     assert nothing.temperature_rise == 0.0
     assert nothing.melt_margin is None
-    still = forces(Conductor(material="copper", section="16 mm**2", neighbour=({"spacing": "0.1 m"},)), Flash((Stroke(peak=0.0, specific_energy=0.0),)))
+    still = forces(
+        Conductor(material="copper", section="16 mm**2", neighbour=({"spacing": "0.1 m"},)),
+        Flash((Stroke(peak=0.0, specific_energy=0.0),)),
+    )
     assert still.force_per_length == 0.0
 
 
 def test_parallel_conductors_of_the_standard():
     # IEC 62305-1:2010 Annex D.4.2 formula; 100 kA, 0.10 m, 5 m: 100 kN, and 98.02 kN for the finite length.
-    infinite = one(kind="conductor", material="copper", section="50 mm**2", flash=strokes(peak="100 kA"), neighbour=[{"spacing": "0.1 m"}])
+    infinite = one(
+        kind="conductor",
+        material="copper",
+        section="50 mm**2",
+        flash=strokes(peak="100 kA"),
+        neighbour=[{"spacing": "0.1 m"}],
+    )
     assert value(infinite, "force_per_length") * 5 == pytest.approx(100e3, rel=1e-9)
-    finite = one(kind="conductor", material="copper", section="50 mm**2", flash=strokes(peak="100 kA"), neighbour=[{"spacing": "0.1 m", "length": "5 m"}])
+    finite = one(
+        kind="conductor",
+        material="copper",
+        section="50 mm**2",
+        flash=strokes(peak="100 kA"),
+        neighbour=[{"spacing": "0.1 m", "length": "5 m"}],
+    )
     assert value(finite, "neighbour_force") == pytest.approx(98.02e3, rel=1e-5)
     assert value(finite, "force_per_length") == pytest.approx(98.02e3 / 5, rel=1e-5)
     assert value(finite, "force_sense") == "attraction"
@@ -185,20 +227,39 @@ def test_parallel_conductors_of_the_standard():
 
 def test_impulse_of_the_force():
     # 2e-7 * W/R / d: 10 MJ/ohm at 0.1 m gives 20 N s/m.
-    result = one(kind="conductor", material="copper", section="50 mm**2", neighbour=[{"spacing": "0.1 m", "direction": "opposite"}])
+    result = one(
+        kind="conductor",
+        material="copper",
+        section="50 mm**2",
+        neighbour=[{"spacing": "0.1 m", "direction": "opposite"}],
+    )
     assert value(result, "force_impulse_per_length") == pytest.approx(20.0, rel=1e-9)
     assert value(result, "force_per_length") == pytest.approx(80e3, rel=1e-9)
     assert value(result, "force_sense") == "repulsion"
 
 
 def test_shares_of_the_neighbours():
-    result = one(kind="conductor", material="copper", section="50 mm**2", share=0.5, flash=strokes(peak="100 kA"), neighbour=[{"spacing": "0.1 m", "share": 0.25}])
+    result = one(
+        kind="conductor",
+        material="copper",
+        section="50 mm**2",
+        share=0.5,
+        flash=strokes(peak="100 kA"),
+        neighbour=[{"spacing": "0.1 m", "share": 0.25}],
+    )
     assert value(result, "force_per_length") == pytest.approx(0.125 * 20e3, rel=1e-9)
 
 
 def test_several_neighbours_are_an_upper_bound():
     near = {"spacing": "0.1 m"}
-    result = one(kind="conductor", material="copper", section="50 mm**2", share=0.3, flash=strokes(peak="100 kA"), neighbour=[near, {**near, "direction": "opposite"}])
+    result = one(
+        kind="conductor",
+        material="copper",
+        section="50 mm**2",
+        share=0.3,
+        flash=strokes(peak="100 kA"),
+        neighbour=[near, {**near, "direction": "opposite"}],
+    )
     assert value(result, "force_per_length") == pytest.approx(2 * 0.09 * 20e3, rel=1e-9)
     assert value(result, "force_sense") == "both"
     assert any("upper bound" in text for text in result.remarks)
@@ -211,7 +272,13 @@ def test_more_than_the_whole_current_is_called_a_bound():
 
 def test_bend_is_bracketed():
     # Totals on a 0.5 m leg at 100 kA: 4640.10 N from 4 mm (current at the surface).
-    result = one(kind="conductor", material="copper", diameter="8 mm", flash=strokes(peak="100 kA"), bend={"leg": "0.5 m", "span": "0.5 m"})
+    result = one(
+        kind="conductor",
+        material="copper",
+        diameter="8 mm",
+        flash=strokes(peak="100 kA"),
+        bend={"leg": "0.5 m", "span": "0.5 m"},
+    )
     found = result.findings["bend_force"]
     assert found.low == pytest.approx(4640.10, abs=0.005)
     assert found.value == found.high > found.low
@@ -220,17 +287,34 @@ def test_bend_is_bracketed():
 
 def test_pinch():
     # 9 mm radius: 1.96488 MPa at 100 kA; rod of 4 mm radius: 9.947 MPa at the surface, 19.894 MPa on the axis.
-    pipe = one(kind="conductor", material="copper", outer_diameter="18 mm", wall="1 mm", flash=strokes(peak="100 kA"))
+    pipe = one(
+        kind="conductor", material="copper", outer_diameter="18 mm", wall="1 mm", flash=strokes(peak="100 kA")
+    )
     assert value(pipe, "pinch_pressure") == pytest.approx(1.96488e6, rel=1e-5)
-    rod = one(kind="conductor", material="copper", diameter="8 mm", flash=strokes(peak="100 kA")).findings["pinch_pressure"]
+    rod = one(kind="conductor", material="copper", diameter="8 mm", flash=strokes(peak="100 kA")).findings[
+        "pinch_pressure"
+    ]
     assert (rod.low, rod.high) == (pytest.approx(9.947e6, rel=1e-4), pytest.approx(19.894e6, rel=1e-4))
-    tape = one(kind="conductor", material="copper", width="20 mm", thickness="2.5 mm", bend={"leg": "1 m", "span": "1 m"})
+    tape = one(
+        kind="conductor",
+        material="copper",
+        width="20 mm",
+        thickness="2.5 mm",
+        bend={"leg": "1 m", "span": "1 m"},
+    )
     assert value(tape, "pinch_pressure") is None
     assert any("taken as a round conductor" in text for text in tape.remarks)
 
 
 def test_energy_alone_gives_impulses_alone():
-    result = one(kind="conductor", material="copper", diameter="8 mm", flash=strokes(specific_energy="1 MJ/ohm"), bend={"leg": "1 m", "span": "1 m"}, neighbour=[{"spacing": "1 m"}])
+    result = one(
+        kind="conductor",
+        material="copper",
+        diameter="8 mm",
+        flash=strokes(specific_energy="1 MJ/ohm"),
+        bend={"leg": "1 m", "span": "1 m"},
+        neighbour=[{"spacing": "1 m"}],
+    )
     assert value(result, "pinch_pressure") is None
     assert value(result, "bend_force") is None
     assert value(result, "bend_force_impulse") > 0
@@ -268,7 +352,9 @@ def test_charge_alone_gives_no_force_and_says_so():
 def test_refused(fields, where, said):
     with pytest.raises(CaseError) as caught:
         one(kind="conductor", material="copper", **fields)
-    assert any(where in problem.path and said in str(problem) for problem in caught.value.problems), str(caught.value)
+    assert any(where in problem.path and said in str(problem) for problem in caught.value.problems), str(
+        caught.value
+    )
 
 
 def test_the_class_itself_refuses_in_python():

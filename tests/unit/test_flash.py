@@ -11,7 +11,9 @@ from strikeenergy.sources import Standing
 
 def test_published_medians_are_no_current():
     # The published medians of positive strokes (35 kA, 16 C, 650 kJ/ohm) cannot belong to one current: W/R > I*Q.
-    with pytest.raises(InputError, match="W/R cannot exceed peak times charge, 650 kJ/Ω against at most 560 kJ/Ω"):
+    with pytest.raises(
+        InputError, match="W/R cannot exceed peak times charge, 650 kJ/Ω against at most 560 kJ/Ω"
+    ):
         Stroke(peak="35 kA", charge="16 C", specific_energy="650 kJ/ohm")
 
 
@@ -71,7 +73,11 @@ def test_long_stroke_without_energy_counts_as_a_rectangle():
 
 def test_what_is_missing_is_named():
     flash = Flash((Stroke(peak=1e5, name="first"), Stroke(charge=5.0)))
-    for name, said in (("specific_energy", r"stroke 1 \(first\) has no specific energy"), ("peak", "stroke 2 has no peak"), ("charge", "stroke 1")):
+    for name, said in (
+        ("specific_energy", r"stroke 1 \(first\) has no specific energy"),
+        ("peak", "stroke 2 has no peak"),
+        ("charge", "stroke 1"),
+    ):
         with pytest.raises(MissingInput, match=said):
             getattr(flash, name)
 
@@ -143,5 +149,7 @@ def test_level_identities():
         peak = first.values["peak"].value
         assert flash.values["charge"].value == first.values["charge"].value + long.values["charge"].value
         assert first.values["charge"].value == pytest.approx(peak * 350e-6 / 0.7, rel=1e-12)
-        assert first.values["specific_energy"].value == pytest.approx(peak**2 * 350e-6 / 1.4, rel=0.005), level
+        assert first.values["specific_energy"].value == pytest.approx(peak**2 * 350e-6 / 1.4, rel=0.005), (
+            level
+        )
         assert set(parts) == {*COMPONENTS, "flash"}

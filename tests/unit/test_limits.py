@@ -1,8 +1,8 @@
 """The comparison layer: outcomes, conditions, editions, standards, reserves."""
 
 import pytest
-from helpers import one, strokes
 
+from helpers import one, strokes
 from strikeenergy.errors import DataError, UnknownName
 from strikeenergy.limit_tables import parse_table
 from strikeenergy.limits import meets
@@ -70,7 +70,7 @@ def test_conditional_says_what_to_tell():
 def test_table_6_stainless(fields, outcome, limit):
     found = verdict(conductor("stainless steel", **fields))
     assert found.outcome == outcome
-    if outcome == "meets" and limit != 75 or outcome == "conditional":
+    if (outcome == "meets" and limit != 75) or outcome == "conditional":
         assert found.limit * 1e6 == pytest.approx(limit)
 
 
@@ -112,9 +112,16 @@ def test_rows_of_each_table_meet_at_their_own_limit(registry):
     for table in registry.limit_tables:
         for check in table.checks:
             for row in check.rows:
-                if table.kind != "conductor" or row.quantity == "side" or not set(row.forms) <= {"solid round", "solid tape", "stranded", "rod", "pipe"}:
+                if (
+                    table.kind != "conductor"
+                    or row.quantity == "side"
+                    or not set(row.forms) <= {"solid round", "solid tape", "stranded", "rod", "pipe"}
+                ):
                     continue
-                for factor, outcome in ((1.0, {"meets", "conditional"}), (0.999, {"falls short", "conditional"})):
+                for factor, outcome in (
+                    (1.0, {"meets", "conditional"}),
+                    (0.999, {"falls short", "conditional"}),
+                ):
                     size = row.minimum.value * factor
                     form = row.forms[0] if row.forms else "stranded"
                     if row.quantity == "section":
@@ -125,7 +132,11 @@ def test_rows_of_each_table_meet_at_their_own_limit(registry):
                         given = {"diameter": f"{size * 1e3!r} mm", "form": form}
                     given |= {"touching": row.only_when.get("touching", [None])[0]} if row.only_when else {}
                     result = conductor(row.materials[0], (row.uses or table.uses)[0], **given)
-                    found = verdict(result, table.standard, check.name, table.clause) if table.standard == NEW else None
+                    found = (
+                        verdict(result, table.standard, check.name, table.clause)
+                        if table.standard == NEW
+                        else None
+                    )
                     if found is None:  # another edition or standard is only returned where it differs
                         continue
                     assert found.outcome in outcome, (table.name, row)
@@ -169,8 +180,16 @@ def test_second_standard_is_kept_apart_and_does_not_decide():
 def test_choosing_the_standard():
     from strikeenergy import estimate, make_case
 
-    thing = {"kind": "conductor", "material": "copper", "kcmil": 57.4, "form": "stranded", "use": "down conductor"}
-    result = estimate(make_case({"flash": {"threat": "LPL I"}, "standard": "NFPA 780 Class I", "object": [thing]}))
+    thing = {
+        "kind": "conductor",
+        "material": "copper",
+        "kcmil": 57.4,
+        "form": "stranded",
+        "use": "down conductor",
+    }
+    result = estimate(
+        make_case({"flash": {"threat": "LPL I"}, "standard": "NFPA 780 Class I", "object": [thing]})
+    )
     assert result.objects[0].outcome == "meets"
     assert int(result.exit_code) == 0
 
@@ -196,11 +215,16 @@ def test_sheet_thickness(thickness, concern, thin, thick):
     found = [v for v in result.verdicts if v.check == "minimum thickness t" and v.standard == NEW]
     assert [v.outcome for v in found] == ([thick] if thick else [])
     # t is never reported as "no ignition"
-    assert not any("ignition" in v.note and "no statement on ignition" not in v.note and "ignite" not in v.note for v in found)
+    assert not any(
+        "ignition" in v.note and "no statement on ignition" not in v.note and "ignite" not in v.note
+        for v in found
+    )
 
 
 def test_hot_spot_in_the_older_edition():
-    result = one(kind="sheet", material="aluminium", thickness="7 mm", use="air termination", concern="hot spot")
+    result = one(
+        kind="sheet", material="aluminium", thickness="7 mm", use="air termination", concern="hot spot"
+    )
     assert verdict(result, OLD, "minimum thickness t").outcome == "meets"
 
 
@@ -217,11 +241,27 @@ def test_materials_and_uses_without_a_row():
 
 def test_earth_electrodes():
     electrode = {"use": "earth electrode", "kind": "conductor"}
-    assert verdict(one(**electrode, material="copper", diameter="15 mm", form="rod"), check="minimum earth electrode").outcome == "meets"
-    assert verdict(one(**electrode, material="copper", diameter="14 mm", form="rod"), check="minimum earth electrode").outcome == "falls short"
+    assert (
+        verdict(
+            one(**electrode, material="copper", diameter="15 mm", form="rod"), check="minimum earth electrode"
+        ).outcome
+        == "meets"
+    )
+    assert (
+        verdict(
+            one(**electrode, material="copper", diameter="14 mm", form="rod"), check="minimum earth electrode"
+        ).outcome
+        == "falls short"
+    )
     bare = {"material": "mild steel", "diameter": "10 mm", "form": "solid round"}
-    assert verdict(one(**electrode, **bare, touching="concrete"), check="minimum earth electrode").outcome == "meets"
-    assert verdict(one(**electrode, **bare, touching="nothing"), check="minimum earth electrode").outcome == "not covered"
+    assert (
+        verdict(one(**electrode, **bare, touching="concrete"), check="minimum earth electrode").outcome
+        == "meets"
+    )
+    assert (
+        verdict(one(**electrode, **bare, touching="nothing"), check="minimum earth electrode").outcome
+        == "not covered"
+    )
     assert verdict(one(**electrode, **bare), check="minimum earth electrode").outcome == "meets"
 
 

@@ -75,7 +75,10 @@ def test_unknown_names():
 
 
 def test_own_material():
-    given = {"resistivity": ("30 nohm*m", Source("own", "certificate"), Standing.GIVEN), "inverse_coefficient": ("230 K", Source("own", "certificate"), Standing.GIVEN)}
+    given = {
+        "resistivity": ("30 nohm*m", Source("own", "certificate"), Standing.GIVEN),
+        "inverse_coefficient": ("230 K", Source("own", "certificate"), Standing.GIVEN),
+    }
     own = own_material("x", given)
     assert own["resistivity"].value == pytest.approx(30e-9)
     assert own["temperature_coefficient"].value == pytest.approx(1 / 250)
@@ -125,5 +128,5 @@ def test_a_number_without_a_source_does_not_load():
 
 
 def test_missing_table():
-    with pytest.raises(DataError, match="nothing.toml"):
+    with pytest.raises(DataError, match=r"nothing\.toml"):
         read_table("strikeenergy", "data", "nothing.toml")

@@ -52,7 +52,14 @@ def test_shown_with_the_values_put_in():
     note = Note()
     alpha = Constant(3.92e-3, "1/K", SOURCE, Standing.PUBLISHED, "coefficient")
     rise = note.formula(
-        "Δθ", "expm1(w*alpha)/alpha", "K", meaning="rise", source=SOURCE, finding="temperature_rise", w=Given(2.0, "K"), alpha=alpha
+        "Δθ",
+        "expm1(w*alpha)/alpha",
+        "K",
+        meaning="rise",
+        source=SOURCE,
+        finding="temperature_rise",
+        w=Given(2.0, "K"),
+        alpha=alpha,
     )
     step = note.steps[0]
     assert rise == pytest.approx(math.expm1(2 * 3.92e-3) / 3.92e-3, rel=1e-15)
@@ -86,7 +93,12 @@ def test_what_is_said_is_said_once():
     note.leaves_out("b")
     note.leaves_out("b")
     note.unknown("f", "why")
-    assert (len(note.assumptions), note.remarks, note.left_out, note.unknowns) == (1, ["a"], ["b"], {"f": "why"})
+    assert (len(note.assumptions), note.remarks, note.left_out, note.unknowns) == (
+        1,
+        ["a"],
+        ["b"],
+        {"f": "why"},
+    )
 
 
 def test_symbols():

@@ -301,7 +301,9 @@ def test_stroke_numbers_of_the_sample(drawn):
         assert (np.mean(strokes == 1), strokes.mean()) == pytest.approx((single, mean), rel=0.02)
 
 
-@pytest.mark.parametrize(("name", "negative", "positive"), [("LS1989", 0.20, 0.90), ("video", 0.30, 0.75)])
+@pytest.mark.parametrize(
+    ("name", "negative", "positive"), [("LS1989", 0.20, 0.90), ("Saba 2010", 0.30, 0.75)]
+)
 def test_continuing_current_shares_survive_the_joint_law(name, negative, positive):
     drawn = population(continuing=name).sample(100_000, 2)
     assert drawn.continuing[drawn.polarity < 0].mean() == pytest.approx(negative, abs=0.006)

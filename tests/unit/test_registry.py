@@ -5,8 +5,8 @@ import textwrap
 from importlib.metadata import EntryPoint
 
 import pytest
-from helpers import one
 
+from helpers import one
 from strikeenergy import estimate, make_case
 from strikeenergy.errors import ExitCode, PluginError
 from strikeenergy.registry import GROUP, kind_name, load
@@ -120,7 +120,13 @@ def test_a_broken_plugin_is_recorded_and_the_rest_goes_on(plugin, name):
     assert [(f.stage, f.plugin) for f in registry.failures] == [(stage, name.replace(" ", "_"))]
     assert said in registry.failures[0].reason
     assert registry.failures[0].distribution == "unknown distribution"
-    case = make_case({"flash": {"threat": "LPL I"}, "object": [{"kind": "conductor", "material": "copper", "section": "16 mm**2"}]}, registry=registry)
+    case = make_case(
+        {
+            "flash": {"threat": "LPL I"},
+            "object": [{"kind": "conductor", "material": "copper", "section": "16 mm**2"}],
+        },
+        registry=registry,
+    )
     result = estimate(case)
     assert result.exit_code is ExitCode.PLUGIN
     assert result.objects[0].findings["temperature_rise"].value == pytest.approx(309.06, abs=0.01)
@@ -141,7 +147,10 @@ def test_a_plugin_that_fails_while_computing(plugin, name):
     value, said = COMPUTING[name]
     registry = load([*built_in(), plugin("kite", GOOD.replace("{value}", value))])
     case = make_case(
-        {"flash": {"threat": "LPL I"}, "object": [{"kind": "kite"}, {"kind": "sheet", "material": "copper", "thickness": "1 mm"}]},
+        {
+            "flash": {"threat": "LPL I"},
+            "object": [{"kind": "kite"}, {"kind": "sheet", "material": "copper", "thickness": "1 mm"}],
+        },
         registry=registry,
     )
     result = estimate(case)
@@ -208,7 +217,10 @@ def test_two_effects_may_not_bring_one_finding(plugin):
         return [other]
     """
     registry = load([*built_in(), plugin("zother", text)])
-    assert "the finding 'root_energy' is already brought by plugin sheet (strikeenergy)" in registry.failures[0].reason
+    assert (
+        "the finding 'root_energy' is already brought by plugin sheet (strikeenergy)"
+        in registry.failures[0].reason
+    )
 
 
 def test_undeclared_finding_is_refused_where_it_is_written():
@@ -242,7 +254,14 @@ def test_table_from_a_plugin(plugin):
         }]
     """
     registry = load([*built_in(), plugin("rule", text)])
-    result = one(registry, kind="conductor", material="copper", section="50 mm**2", form="solid tape", use="down conductor")
+    result = one(
+        registry,
+        kind="conductor",
+        material="copper",
+        section="50 mm**2",
+        form="solid tape",
+        use="down conductor",
+    )
     found = next(v for v in result.verdicts if v.standard == "House rule 1")
     assert (found.outcome, found.counts) == ("falls short", False)
 
@@ -258,7 +277,14 @@ def test_damaged_table_of_a_plugin_does_not_stop_the_others(plugin):
     registry = load([*built_in(), plugin("half", text)])
     assert [f.stage for f in registry.failures] == ["register"]
     assert "Half a table" in registry.failures[0].reason
-    result = one(registry, kind="conductor", material="copper", section="50 mm**2", form="solid tape", use="down conductor")
+    result = one(
+        registry,
+        kind="conductor",
+        material="copper",
+        section="50 mm**2",
+        form="solid tape",
+        use="down conductor",
+    )
     assert result.outcome == "meets"
 
 

@@ -6,9 +6,9 @@ import json
 
 import numpy as np
 import pytest
-from helpers import ROOT
 
 import strikeenergy
+from helpers import ROOT
 from strikeenergy import estimate, load_case, make_case
 from strikeenergy.errors import ExitCode
 from strikeenergy.report.machine import COLUMNS, to_csv, to_json
@@ -22,7 +22,14 @@ def boathouse():
 
 
 def simple(**fields):
-    thing = {"kind": "conductor", "material": "copper", "section": "50 mm**2", "form": "solid tape", "use": "down conductor", **fields}
+    thing = {
+        "kind": "conductor",
+        "material": "copper",
+        "section": "50 mm**2",
+        "form": "solid tape",
+        "use": "down conductor",
+        **fields,
+    }
     return estimate(make_case({"flash": {"threat": "LPL I"}, "object": [thing]}))
 
 
@@ -39,7 +46,15 @@ def test_python_api(boathouse):
 
 
 def test_html_says_the_same_and_escapes():
-    result = estimate(make_case({"title": "<script>", "flash": {"threat": "LPL I"}, "object": [{"kind": "sheet", "name": "a<b", "material": "copper", "thickness": "1 mm"}]}))
+    result = estimate(
+        make_case(
+            {
+                "title": "<script>",
+                "flash": {"threat": "LPL I"},
+                "object": [{"kind": "sheet", "name": "a<b", "material": "copper", "thickness": "1 mm"}],
+            }
+        )
+    )
     page = result._repr_html_()
     assert "<script>" not in page
     assert "a&lt;b" in page
@@ -98,7 +113,14 @@ def test_text_fits_a_terminal_and_says_what_matters(boathouse):
     text = estimate_text(boathouse)
     assert max(map(len, text.splitlines())) <= WIDTH
     assert text.index("objects:") < text.index("Findings") < text.index("Cautions")
-    for said in ("(governs)", "upper bound", "models leave out", "IEC 62305-3:2010 Table 6", "does not decide", "licensed"):
+    for said in (
+        "(governs)",
+        "upper bound",
+        "models leave out",
+        "IEC 62305-3:2010 Table 6",
+        "does not decide",
+        "licensed",
+    ):
         assert said in text or said in text.lower(), said
 
 
@@ -123,7 +145,10 @@ def test_every_shown_step_is_the_computed_one(boathouse):
 def test_exit_codes():
     assert simple().exit_code is ExitCode.OK
     assert simple(section="20 mm**2").exit_code is ExitCode.FALLS_SHORT
-    nothing = {"flash": {"threat": "LPL I"}, "object": [{"kind": "sheet", "material": "titanium", "thickness": "1 mm"}]}
+    nothing = {
+        "flash": {"threat": "LPL I"},
+        "object": [{"kind": "sheet", "material": "titanium", "thickness": "1 mm"}],
+    }
     assert estimate(make_case(nothing)).exit_code is ExitCode.NO_RESULT
 
 
@@ -142,7 +167,12 @@ def test_plain_values():
 def test_arrays_come_out_as_lists():
     from strikeenergy import quantity
 
-    case = make_case({"flash": {"stroke": [{"specific_energy": quantity(np.array([1e6, 1e9]), "J/ohm")}]}, "object": [{"kind": "conductor", "material": "copper", "section": "16 mm**2"}]})
+    case = make_case(
+        {
+            "flash": {"stroke": [{"specific_energy": quantity(np.array([1e6, 1e9]), "J/ohm")}]},
+            "object": [{"kind": "conductor", "material": "copper", "section": "16 mm**2"}],
+        }
+    )
     result = estimate(case)
     data = json.loads(to_json(result.to_dict()))["objects"][0]["findings"]
     assert data["state"]["value"] == ["solid", "molten"]

@@ -141,8 +141,15 @@ def test_awg_is_no_unit_elsewhere():
 def test_awg_sizes_against_the_standard():
     # ASTM B258: 4/0 is 0.4600 in and 36 is 0.0050 in by definition; 10 AWG is 0.1019 in (handbook tables).
     inch = 0.0254
-    for size, diameter, tolerance in (("4/0", 0.46, 1e-12), ("0000", 0.46, 1e-12), (36, 0.005, 1e-12), (10, 0.1019, 5e-4)):
-        assert awg_section(size) == pytest.approx(math.pi / 4 * (diameter * inch) ** 2, rel=2 * tolerance + 1e-12)
+    for size, diameter, tolerance in (
+        ("4/0", 0.46, 1e-12),
+        ("0000", 0.46, 1e-12),
+        (36, 0.005, 1e-12),
+        (10, 0.1019, 5e-4),
+    ):
+        assert awg_section(size) == pytest.approx(
+            math.pi / 4 * (diameter * inch) ** 2, rel=2 * tolerance + 1e-12
+        )
 
 
 def test_awg_refused():
@@ -164,6 +171,7 @@ def test_pint_quantities_of_any_registry():
     assert read(own.Quantity(2.0, "kA"), "A") == 2000.0
     assert read(own.Quantity(20.0, "degC"), "degC") == 293.15
     np.testing.assert_allclose(read(own.Quantity(np.array([1.0, 2.0]), "mm**2"), "mm**2"), [1e-6, 2e-6])
+    assert read(own.Quantity(2.0, "1/ms"), "1/s") == 2000.0
     with pytest.raises(QuantityError, match="an area"):
         read(own.Quantity(2.0, "kA"), "mm**2")
     with pytest.raises(QuantityError, match="1 of 2 values"):

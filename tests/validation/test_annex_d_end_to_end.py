@@ -5,6 +5,7 @@ conductor melts or vaporises; it must come out as that and never as a temperatur
 """
 
 import pytest
+
 from helpers import one, strokes
 
 ENERGIES = ("2.5 MJ/ohm", "5.6 MJ/ohm", "10 MJ/ohm")

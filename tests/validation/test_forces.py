@@ -36,7 +36,8 @@ def test_profile_along_the_bend(x, kilonewton):
 
 
 @pytest.mark.parametrize(
-    ("x1", "x2", "force"), [(0.004, 0.5, 4640.10), (0.005, 0.5, 4416.97), (0.01, 0.5, 3723.90), (0.1, 0.5, 1431.06)]
+    ("x1", "x2", "force"),
+    [(0.004, 0.5, 4640.10), (0.005, 0.5, 4416.97), (0.01, 0.5, 3723.90), (0.1, 0.5, 1431.06)],
 )
 def test_totals_on_the_leg(x1, x2, force):
     assert magnetics.BEND(i2=I2, x1=x1, x2=x2, l=0.5) == pytest.approx(force, abs=0.006)
@@ -47,13 +48,20 @@ def test_cut_off_of_a_spread_current():
     assert magnetics.BEND_CUTOFF_UNIFORM(r=1.0) == pytest.approx(math.exp(-0.25), rel=1e-15)
 
 
-@pytest.mark.parametrize(("radius", "current", "pascal"), [(9e-3, 100e3, 1.96488e6), (9e-3, 200e3, 7.8595e6), (4e-3, 100e3, 9.947e6)])
+@pytest.mark.parametrize(
+    ("radius", "current", "pascal"),
+    [(9e-3, 100e3, 1.96488e6), (9e-3, 200e3, 7.8595e6), (4e-3, 100e3, 9.947e6)],
+)
 def test_pinch(radius, current, pascal):
     assert magnetics.PINCH_SURFACE(i2=current**2, r=radius) == pytest.approx(pascal, rel=5e-5)
 
 
 def test_force_per_protection_level():
     # both conductors with the full current at 0.1 m: 80 / 45 / 20 kN/m and 20 / 11.2 / 5.0 N·s/m
-    for peak, energy, force, impulse in ((200e3, 10e6, 80e3, 20), (150e3, 5.6e6, 45e3, 11.2), (100e3, 2.5e6, 20e3, 5)):
+    for peak, energy, force, impulse in (
+        (200e3, 10e6, 80e3, 20),
+        (150e3, 5.6e6, 45e3, 11.2),
+        (100e3, 2.5e6, 20e3, 5),
+    ):
         assert magnetics.PARALLEL_PER_LENGTH(i2=peak**2, d=0.1) == pytest.approx(force, rel=1e-9)
         assert magnetics.PARALLEL_PER_LENGTH(i2=energy, d=0.1) == pytest.approx(impulse, rel=1e-9)

@@ -92,7 +92,9 @@ def test_conditions_of_table_6(tables):
     for row in tables["IEC 62305-3:2010 Table 6"].checks[0].rows:
         for material in row.materials:
             key = (material, row.forms[0])
-            variants[key] = [round(v.minimum.value * (1e6 if v.quantity == "section" else 1e3), 6) for v in row.variants]
+            variants[key] = [
+                round(v.minimum.value * (1e6 if v.quantity == "section" else 1e3), 6) for v in row.variants
+            ]
     assert variants["copper", ROUND] == variants["copper", STRAND] == [25]  # note b
     assert variants["copper", TAPE] == []
     assert variants["stainless steel", ROUND] == [75, 78]  # note d, and in concrete or on flammable material
@@ -113,7 +115,11 @@ def test_nfpa_780(tables):
 
 
 def test_counts_of_rows(tables):
-    counts = {name: sum(len(check.rows) for check in table.checks) for name, table in tables.items() if "IEC" in name}
+    counts = {
+        name: sum(len(check.rows) for check in table.checks)
+        for name, table in tables.items()
+        if "IEC" in name
+    }
     assert counts == {
         "IEC 62305-3:2006 Table 3": 10,
         "IEC 62305-3:2006 Table 6": 19,

@@ -159,7 +159,9 @@ def test_sums_of_heidler_functions(name):
 def test_sum_rule():
     wave = heidler_sum(SUMS["Nucci 1990"][0])
     digits(wave.specific_energy, 6607.448, 3)
-    digits(sum(part.specific_energy for part in wave.parts), 6350.077, 3)  # what forgetting the product would give
+    digits(
+        sum(part.specific_energy for part in wave.parts), 6350.077, 3
+    )  # what forgetting the product would give
 
 
 def test_composite_flash():
@@ -220,7 +222,10 @@ def test_8_20_of_c62_41():
 
 @pytest.mark.parametrize(
     ("text", "p", "tau", "q", "w"),
-    [("8/20", 2.9306485, 3.9762348, 17.552807, 12.237635), ("4/10", 2.9306485, 1.9881174, 8.776404, 6.118817)],
+    [
+        ("8/20", 2.9306485, 3.9762348, 17.552807, 12.237635),
+        ("4/10", 2.9306485, 1.9881174, 8.776404, 6.118817),
+    ],
 )
 def test_exact_short_shapes(text, p, tau, q, w):
     wave = designation(text, 1.0)
@@ -330,7 +335,14 @@ def test_limit_of_the_double_exponential():
 
 @pytest.mark.parametrize(
     ("n", "a", "rho"),
-    [(10, 0.01, 0.5042), (10, 0.1, 0.5233), (10, 0.5, 0.5641), (10, 1, 0.5913), (2, 0.01, 0.5297), (2, 1, 0.6608)],
+    [
+        (10, 0.01, 0.5042),
+        (10, 0.1, 0.5233),
+        (10, 0.5, 0.5641),
+        (10, 1, 0.5913),
+        (2, 0.01, 0.5297),
+        (2, 1, 0.6608),
+    ],
 )
 def test_energy_over_peak_and_charge_of_one_heidler_function(n, a, rho):
     wave = Heidler(1.0, a, 1.0, n)
