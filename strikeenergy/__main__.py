@@ -8,7 +8,7 @@ import sys
 def main() -> None:
     """Answer ``--version`` at once; hand everything else to the command line."""
     if sys.argv[1:] == ["--version"]:
-        from strikeenergy import __version__
+        from strikeenergy.version import __version__
 
         print(f"strikeenergy {__version__}")
         return

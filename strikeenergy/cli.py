@@ -10,8 +10,8 @@ from typing import TYPE_CHECKING
 
 import click
 
-from strikeenergy import __version__
 from strikeenergy.errors import ExitCode, StrikeEnergyError
+from strikeenergy.version import __version__
 
 if TYPE_CHECKING:
     from strikeenergy.errors import PluginError

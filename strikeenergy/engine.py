@@ -11,7 +11,6 @@ from typing import Any
 
 import numpy as np
 
-from strikeenergy import __version__
 from strikeenergy.case import Case
 from strikeenergy.errors import InputError, MissingInput, OutsideValidity, PluginError
 from strikeenergy.inputs import StruckObject
@@ -22,6 +21,7 @@ from strikeenergy.plugin import Bracket, Criterion, Effect, Finding, Findings, W
 from strikeenergy.registry import Registry, kind_name, short_reason
 from strikeenergy.results import Estimate, FindingResult, ObjectResult, Verdict
 from strikeenergy.sources import Standing, weakest
+from strikeenergy.version import __version__
 
 __all__ = ["estimate", "run_effect", "run_object"]
 
