@@ -11,62 +11,20 @@ import tomllib
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field, replace
 from pathlib import Path
-from typing import Annotated, Any
-
-from pydantic import Field
+from typing import Any
 
 from strikeenergy.casetext import CaseError, locate, read_text, syntax_problem
 from strikeenergy.declared import validate
 from strikeenergy.errors import InputError, Problem, close_matches
-from strikeenergy.inputs import Part, StruckObject, Unit
-from strikeenergy.lightning.flash import Flash, Stroke
-from strikeenergy.lightning.threats import threat
+from strikeenergy.flashcase import build_flash
+from strikeenergy.inputs import StruckObject
+from strikeenergy.lightning.flash import Flash
 from strikeenergy.limit_tables import DEFAULT_STANDARD
 from strikeenergy.materials import PROPERTIES, Materials, material_names, own_material
 from strikeenergy.registry import Registry, load
 from strikeenergy.sources import Constant, Source, Standing
-from strikeenergy.units import Quantity
 
-__all__ = [
-    "Case",
-    "CaseError",
-    "FlashSection",
-    "StrokeEntry",
-    "load_case",
-    "locate",
-    "make_case",
-    "read_case",
-]
-
-
-class StrokeEntry(Part):
-    """One [[flash.stroke]]: whatever is known of it."""
-
-    name: str = ""
-    """What the stroke is called in the report."""
-    peak: Annotated[Quantity, Unit("kA", gt=0, typical=(5, 200), example="100 kA")] | None = None
-    """Peak current."""
-    charge: Annotated[Quantity, Unit("C", gt=0, typical=(1, 300), example="50 C")] | None = None
-    """Charge, the time integral of the current."""
-    specific_energy: (
-        Annotated[Quantity, Unit("J/ohm", gt=0, typical=(1e4, 1e7), example="2.5 MJ/ohm")] | None
-    ) = None
-    """Specific energy W/R, the time integral of the current squared."""
-    duration: Annotated[Quantity, Unit("s", gt=0, typical=(1e-4, 1), example="0.5 s")] | None = None
-    """Duration. More than 2 ms makes it a long stroke."""
-    polarity: str | int | None = None
-    """positive or negative: the sign of the charge brought to earth."""
-    start: Annotated[Quantity, Unit("s", ge=0, typical=(0, 1), example="40 ms")] | None = None
-    """When it begins, counted from the first stroke."""
-
-
-class FlashSection(Part):
-    """The [flash] of a case: a named threat, or the strokes."""
-
-    threat: str | None = None
-    """A named threat, such as "LPL I"; 'strikeenergy describe threats' lists them."""
-    stroke: Annotated[tuple[StrokeEntry, ...], Field(strict=False)] = ()
-    """The strokes in time order: [[flash.stroke]] entries."""
+__all__ = ["Case", "CaseError", "load_case", "make_case", "read_case"]
 
 
 @dataclass
@@ -184,7 +142,7 @@ def _build(
         where = "--standard" if standard else "standard"
         problems += [replace(p, path=(where,)) for p in error.problems]
     materials = _materials(data.get("materials", {}), problems)
-    flash = _flash(data.get("flash"), threat_name, problems)
+    flash = build_flash(data.get("flash"), threat_name, Path(name).parent, problems)
     objects = _objects(data.get("object"), registry, materials, problems)
     if problems or flash is None:
         raise CaseError(problems)
@@ -275,62 +233,6 @@ def _own_value(
     if value is None:
         problems.append(Problem("the value is missing", write, path))
     return value, str(source or "")
-
-
-def _flash(data: Any, threat_name: str | None, problems: list[Problem]) -> Flash | None:
-    write = 'write [flash] and threat = "LPL I" below it, or [[flash.stroke]] entries'
-    if threat_name is not None:
-        try:
-            return threat(threat_name)
-        except InputError as error:
-            problems += [replace(p, path=("--threat",)) for p in error.problems]
-            return None
-    if data is None:
-        problems.append(Problem("the flash is missing", write))
-        return None
-    table = _table(data, ("flash",), problems, write)
-    if table is None:
-        return None
-    section = validate(FlashSection, table, ("flash",), {}, problems)
-    if section is None:
-        return None
-    if section.threat is not None and section.stroke:
-        problems.append(Problem("threat and strokes are both given", "give one of them", ("flash", "threat")))
-        return None
-    if section.threat is not None:
-        try:
-            return threat(section.threat)
-        except InputError as error:
-            problems += [replace(p, path=("flash", "threat")) for p in error.problems]
-            return None
-    strokes = []
-    for number, entry in enumerate(section.stroke):
-        path = ("flash", "stroke", number)
-        polarity = _polarity(entry.polarity, (*path, "polarity"), problems)
-        values = entry.model_dump(exclude={"polarity"})
-        if all(values[key] is None for key in ("peak", "charge", "specific_energy")):
-            problems.append(
-                Problem(
-                    "the stroke has no peak, charge or specific energy", "give at least one of them", path
-                )
-            )
-        try:
-            strokes.append(Stroke(**values, polarity=polarity))
-        except InputError as error:
-            problems += [replace(p, path=(*path, *p.path)) for p in error.problems]
-    if not section.stroke:
-        problems.append(Problem("the flash is empty", write, ("flash",)))
-    return Flash(tuple(strokes)) if strokes else None
-
-
-_POLARITIES = {"positive": 1, "negative": -1, "+": 1, "-": -1, 1: 1, -1: -1, "+1": 1, "-1": -1, "1": 1}
-
-
-def _polarity(value: str | int | None, path: tuple[str | int, ...], problems: list[Problem]) -> int | None:
-    if value is None or value in _POLARITIES:
-        return None if value is None else _POLARITIES[value]
-    problems.append(Problem(f"unknown polarity {value!r}", "write 'positive' or 'negative'", path))
-    return None
 
 
 def _objects(

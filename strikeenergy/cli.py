@@ -6,7 +6,7 @@ import os
 import sys
 import traceback
 from pathlib import Path
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
 import click
 
@@ -163,6 +163,84 @@ def estimate(
 
 
 @main.command()
+@click.argument("file", metavar="FILE")
+@click.option("--text", "form", flag_value="text", help="For people (the default on a terminal).")
+@click.option("--json", "form", flag_value="json", help="One JSON object in SI units, keys sorted.")
+@click.option("--csv", "form", flag_value="csv", help="One quantity a line (the default when piped).")
+@click.option("--channel", metavar="NAME", help="Name or number of the column, where there are several.")
+@click.option("--time-unit", metavar="UNIT", help='Unit of the times, such as "us".')
+@click.option("--current-unit", metavar="UNIT", help='Unit of the current, such as "kA".')
+@click.option("--scale", metavar="SCALE", help='What one unit stands for: "10 kA/V", "0.25 mohm" (a shunt).')
+@click.option("--time-step", metavar="TIME", help="Time between samples, where the file holds no times.")
+@click.option(
+    "--sensor-time-constant", metavar="TIME", help="Repair the droop of a sensor without d.c. response."
+)
+@click.option("--baseline", nargs=2, metavar="FROM TO", help="Window that holds no current, for the offset.")
+@click.option("--polarity", type=click.Choice(["positive", "negative"]), help="Instead of that of the peak.")
+@click.option("--spec", metavar="NAME", help="Hold it against the tolerances of a test.")
+@click.option("--tolerance", metavar="NAME", help="Which tolerance, where sources differ.")
+@click.option("--peak", metavar="CURRENT", help="Nominal peak, for shapes such as 8/20.")
+@click.option("--plot", metavar="FILE", help="Draw current, charge and W/R over time (SVG).")
+@click.option("--force", is_flag=True, help="Replace the plot if it exists.")
+def record(
+    file: str,
+    form: str | None,
+    baseline: tuple[str, str] | None,
+    polarity: str | None,
+    sensor_time_constant: str | None,
+    spec: str | None,
+    tolerance: str | None,
+    peak: str | None,
+    plot: str | None,
+    force: bool,
+    **options: str | None,
+) -> int:
+    """Reduce the oscillogram in FILE to peak, T1, T2, charge and specific energy, each with its uncertainty.
+
+    FILE is text: columns with or without a heading, comma, semicolon, tab or blank between them. Units are taken
+    from the heading or given; they are never guessed. With --spec the exit code is 1 where a quantity is outside.
+    'strikeenergy describe specifications' lists the tests.
+
+    \b
+    Examples:
+      strikeenergy record cases/mast-shot.csv --scale "10 kA/V" --text
+      strikeenergy record cases/mast-shot.csv --scale "10 kA/V" --spec "LPL III first positive impulse"
+    """
+    from strikeenergy.lightning import record as reading
+    from strikeenergy.lightning.reduce import reduce
+    from strikeenergy.lightning.tolerances import check
+    from strikeenergy.report import recorded
+    from strikeenergy.report.machine import to_json
+    from strikeenergy.report.terminal import show
+
+    source = sys.stdin.buffer if file == "-" else file
+    given: dict[str, Any] = {name: value for name, value in options.items() if value is not None}
+    read = reading.read_record(source, **given)
+    sign = None if polarity is None else 1 if polarity == "positive" else -1
+    reduction = reduce(
+        read, sensor_time_constant=sensor_time_constant, polarity=sign, baseline=baseline or None
+    )
+    held = check(reduction, spec, tolerance, peak=peak) if spec else []
+    if plot:
+        from strikeenergy.lightning.record_plot import write_record_svg
+
+        if Path(plot).exists() and not force:
+            raise click.UsageError(f"{plot} exists; name another file or give --force")
+        try:
+            write_record_svg(reduction, plot)
+        except OSError as error:
+            raise click.UsageError(f"{plot} cannot be written: {error.strerror or error}") from None
+    form = form or ("text" if sys.stdout.isatty() else "csv")
+    if form == "json":
+        _write(to_json(recorded.record_data(read, reduction, held)), None)
+    elif form == "csv":
+        _write(recorded.record_csv(reduction, held), None)
+    else:
+        show(recorded.record_text(read, reduction, held, spec or ""))
+    return int(ExitCode.FALLS_SHORT if any(r.outcome == "fail" for r in held) else ExitCode.OK)
+
+
+@main.command()
 @click.argument("kind", metavar="KIND")
 @click.option("-o", "--output", metavar="FILE", help="Write to a file (UTF-8) instead of standard output.")
 @click.option("--force", is_flag=True, help="Replace the file if it exists.")
@@ -193,8 +271,8 @@ def describe(subject: str, name: str, as_json: bool) -> int:
     """Describe what the program knows, with the source and standing of each number.
 
     \b
-    SUBJECT is kinds, materials, threats, tables, standards or sources; a KIND; or
-    kind, material, threat, table with a NAME.
+    SUBJECT is kinds, materials, threats, shapes, populations, specifications, tables, standards or
+    sources; a KIND; or kind, material, threat, population, specification or table with a NAME.
 
     \b
     Examples:

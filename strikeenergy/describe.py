@@ -2,59 +2,38 @@
 
 from __future__ import annotations
 
-import textwrap
 from collections.abc import Iterable
-from dataclasses import dataclass, field
 from typing import Any
 
+from strikeenergy import describe_lightning as lightning
 from strikeenergy.errors import UnknownName
 from strikeenergy.formatting import format_quantity, pretty
 from strikeenergy.inputs import Part, default_text, parts_of, summary_of, unit_of, words_of
-from strikeenergy.lightning.threats import COMPONENTS, levels, threat, threat_names
+from strikeenergy.lightning.population import population_names
+from strikeenergy.lightning.threats import threat_names
+from strikeenergy.lightning.tolerances import specification_names
+from strikeenergy.lightning.waveform import SHAPES
 from strikeenergy.limit_tables import DEFAULT_STANDARD, LimitTable, Row
 from strikeenergy.materials import PROPERTIES, Materials, material_names, sets
+from strikeenergy.page import Page, constant_text
 from strikeenergy.plugin import Effect
 from strikeenergy.registry import Registry, kind_name
-from strikeenergy.sources import Constant, sources
+from strikeenergy.sources import sources
 from strikeenergy.units import dimension_name
 
 __all__ = ["Page", "describe", "plugin_data", "plugin_pages"]
 
-_SUBJECTS = ("kinds", "materials", "threats", "tables", "standards", "sources")
-_WIDTH = 80
-
-
-@dataclass
-class Page:
-    """A titled list of entries; each entry has a name and what is to be said of it."""
-
-    title: str
-    entries: list[tuple[str, str]] = field(default_factory=list)
-    intro: str = ""
-
-    def text(self) -> str:
-        """Return it for people."""
-        lines = [self.title, "-" * min(len(self.title), _WIDTH)]
-        lines += textwrap.wrap(self.intro, _WIDTH) if self.intro else []
-        width = min(max((len(name) for name, _ in self.entries), default=0), 28)
-        for name, said in self.entries:
-            first = f"  {name:<{width}}  "
-            rest = " " * (width + 4)
-            if len(name) > width:
-                lines.append(f"  {name}")
-                first = rest
-            lines += textwrap.wrap(
-                said, _WIDTH, initial_indent=first, subsequent_indent=rest, break_on_hyphens=False
-            ) or [first.rstrip()]
-        return "\n".join(lines) + "\n"
-
-    def to_dict(self) -> dict[str, Any]:
-        """Return it for JSON."""
-        return {
-            "title": self.title,
-            "intro": self.intro,
-            "entries": [{"name": n, "text": t} for n, t in self.entries],
-        }
+_SUBJECTS = (
+    "kinds",
+    "materials",
+    "threats",
+    "shapes",
+    "populations",
+    "specifications",
+    "tables",
+    "standards",
+    "sources",
+)
 
 
 def describe(registry: Registry, subject: str = "", name: str = "") -> list[Page]:
@@ -66,18 +45,27 @@ def describe(registry: Registry, subject: str = "", name: str = "") -> list[Page
     several = {
         "kinds": _kinds,
         "materials": _materials,
-        "threats": _threats,
+        "threats": lightning.threats,
+        "shapes": lightning.shapes,
+        "populations": lightning.populations,
+        "specifications": lightning.specifications,
         "tables": _tables,
         "standards": _standards,
         "sources": _sources,
     }
-    one = {"kind": _kind, "material": _material, "threat": _threat, "table": _table}
+    one = {
+        "kind": _kind,
+        "material": _material,
+        "threat": lightning.describe_threat,
+        "population": lightning.describe_population,
+        "specification": lightning.describe_specification,
+        "table": _table,
+    }
     if not subject:
         return [*_kinds(registry), *_overview(registry)]
     if subject in several and not name:
         return several[subject](registry)
-    plural = {"kinds": "kind", "materials": "material", "threats": "threat", "tables": "table"}
-    subject = plural.get(subject, subject) if name else subject
+    subject = subject.removesuffix("s") if name and subject.removesuffix("s") in one else subject
     if subject in one:
         return one[subject](registry, name) if name else several[subject + "s"](registry)
     if subject in registry.kinds and not name:
@@ -90,6 +78,9 @@ def _overview(registry: Registry) -> list[Page]:
         ("describe KIND", "inputs, effects and findings of a kind, such as 'describe conductor'"),
         ("describe materials", f"{len(material_names())} materials in {len(sets())} constant sets"),
         ("describe threats", f"{len(threat_names())} named threats"),
+        ("describe shapes", f"{len(SHAPES)} shapes that a stroke may have"),
+        ("describe populations", f"{len(population_names())} populations of natural flashes"),
+        ("describe specifications", f"{len(specification_names())} tests that a record can be held against"),
         ("describe tables", f"{len(registry.limit_tables)} tables of minimum sizes"),
         ("describe sources", f"{len(sources())} publications that the numbers rest on"),
         ("new KIND", "a commented case to start from"),
@@ -164,11 +155,6 @@ def _fields(model: type[Part]) -> Iterable[tuple[str, str]]:
         yield name, ". ".join(said) + "."
 
 
-def _constant(value: Constant) -> str:
-    shown = "degC" if value.unit == "K" and value.value > 200 else None
-    return f"{format_quantity(value.value, value.unit, shown)}  ({value.source.locator or value.source.citation}; {value.standing})"
-
-
 def _materials(registry: Registry) -> list[Page]:
     known = Materials()
     entries = []
@@ -206,37 +192,11 @@ def _material(registry: Registry, name: str) -> list[Page]:
     for set_name in sets():
         material = known.get(canonical, set_name)
         if material.properties:
-            entries = [(key, _constant(value)) for key, value in material.properties.items()]
+            entries = [(key, constant_text(value)) for key, value in material.properties.items()]
             citation = next(iter(material.properties.values())).source.citation
             intro = ". ".join([*material.remarks, f"Source: {citation}"])
             pages.append(Page(f"{canonical} in {set_name}", entries, intro))
     return pages or [Page(canonical, [], "No constant set has it; the limit tables have rows for it.")]
-
-
-def _threats(registry: Registry) -> list[Page]:
-    entries = [(name, repr(threat(name)).strip("<>").split(": ", 1)[1]) for name in levels()]
-    parts = [
-        (f"LPL I {part}", repr(threat(f"LPL I {part}")).strip("<>").split(": ", 1)[1]) for part in COMPONENTS
-    ]
-    return [
-        Page("Threats", entries, "Protection levels: the first positive impulse and the long stroke."),
-        Page("Components (the same for each level)", parts),
-    ]
-
-
-def _threat(registry: Registry, name: str) -> list[Page]:
-    flash = threat(name)
-    level = next(known for known in levels() if flash.name == known or flash.name.startswith(known + " "))
-    pages = []
-    for part, component in levels()[level].items():
-        if flash.name in (level, f"{level} {part}"):
-            entries = [(key, _constant(value)) for key, value in component.values.items()]
-            if component.shape:
-                entries.append(("shape T1/T2", f"{component.shape} µs"))
-            title = "flash totals" if part == "flash" else part
-            pages.append(Page(f"{level}: {title}", entries))
-    pages[0].intro = " ".join([f"Source: {flash.source}.", *(f"{remark}." for remark in flash.remarks)])
-    return pages
 
 
 def _tables(registry: Registry) -> list[Page]:

@@ -28,10 +28,10 @@ _PREFIXES = {-9: "n", -6: "µ", -3: "m", 0: "", 3: "k", 6: "M", 9: "G"}
 
 def engineering(value: float, unit: str) -> str:
     """Choose the prefix that brings the number between 1 and 1000, where the unit takes one."""
-    if unit not in _PREFIXED or value == 0 or not math.isfinite(value):
+    if unit not in (*_PREFIXED, "s") or value == 0 or not math.isfinite(value):
         return unit
     power = 3 * math.floor(math.log10(abs(value) * (1 + 1e-12)) / 3)
-    power = min(max(power, -9), 9)
+    power = min(max(power, -9), 0 if unit == "s" else 9)
     return _PREFIXES[power] + unit
 
 

@@ -3,15 +3,18 @@
 from __future__ import annotations
 
 import textwrap
+from collections.abc import Sequence
 from typing import Any
 
-from strikeenergy.case import FlashSection
+from strikeenergy.flashcase import FlashSection, StrokeEntry
 from strikeenergy.inputs import Part, parts_of, summary_of, unit_of, words_of
 from strikeenergy.lightning.threats import threat_names
 from strikeenergy.materials import PROPERTIES, material_names, sets
 from strikeenergy.registry import Registry
 
 __all__ = ["case_schema", "new_case"]
+
+_STROKE_KEYS = ("peak", "charge", "specific_energy", "duration", "polarity", "start", "shape")
 
 
 def new_case(registry: Registry, name: str) -> str:
@@ -30,7 +33,7 @@ def new_case(registry: Registry, name: str) -> str:
         "[flash]",
         'threat = "LPL I"        # or the strokes themselves:',
         "# [[flash.stroke]]",
-        *(f"# {line}" for line in _example_lines(_stroke_model(), {}, True)),
+        *(f"# {line}" for line in _example_lines(StrokeEntry, {}, True, _STROKE_KEYS)),
         "",
         "[[object]]",
         f'kind = "{name}"',
@@ -53,14 +56,12 @@ def new_case(registry: Registry, name: str) -> str:
     return "\n".join(lines) + "\n"
 
 
-def _stroke_model() -> type[Part]:
-    return next(model for _, model in parts_of(FlashSection))
-
-
-def _example_lines(model: type[Part], set_fields: dict[str, Any], inside_comment: bool) -> list[str]:
+def _example_lines(
+    model: type[Part], set_fields: dict[str, Any], inside_comment: bool, only: Sequence[str] = ()
+) -> list[str]:
     lines = []
     for name, info in model.model_fields.items():
-        if name in ("kind", "name") or name in dict(parts_of(model)):
+        if (only and name not in only) or name in ("kind", "name") or name in dict(parts_of(model)):
             continue
         mark, words = unit_of(model, name), words_of(info.annotation)
         said = (info.description or "").strip().split("\n")[0]
@@ -76,6 +77,8 @@ def _example_lines(model: type[Part], set_fields: dict[str, Any], inside_comment
             value = " | ".join(f'"{s}"' for s in sets())
         elif name == "awg":
             value = '6 | "2/0"'
+        elif name == "shape":
+            value = '"10/350" | "heidler" | "rectangle"'
         elif name == "polarity":
             value = '"positive" | "negative"'
         else:

@@ -1,7 +1,8 @@
 """Strokes and flashes: peak, charge, specific energy, duration, polarity, as far as they are known.
 
-A stroke carries what was *given*. What an effect needs and was not given is named (:class:`MissingInput`), never
-guessed. Combinations that no current can have are refused. Every value may be an array: then the flash stands for many
+A stroke carries what was *given*, and a waveform where one is known. Values given and values integrated from the waveform
+stay apart: the given one counts, both are shown. What an effect needs and neither has is named (:class:`MissingInput`),
+never guessed. Combinations that no current can have are refused. Every value may be an array: then the flash stands for many
 flashes at once, and everything computed from it is an array as well.
 """
 
@@ -9,12 +10,14 @@ from __future__ import annotations
 
 from collections.abc import Callable, Iterable, Mapping
 from dataclasses import dataclass, field, replace
+from functools import cached_property
 from typing import Any, cast
 
 import numpy as np
 
 from strikeenergy.errors import InputError, MissingInput, Problem
 from strikeenergy.formatting import format_quantity
+from strikeenergy.lightning.waveform import Sum, Waveform
 from strikeenergy.sources import Source, Standing
 from strikeenergy.units import Quantity, read
 
@@ -44,7 +47,10 @@ class Stroke:
         specific_energy: W/R = ∫ i² dt (J/ohm).
         duration: (s). A stroke longer than 2 ms is a long stroke.
         polarity: +1 or -1, the sign of the charge brought to earth; None where it is not known.
-        start: when it begins, counted from the first stroke (s).
+        start: when it begins, counted from the first stroke (s). Strokes without a start follow one another; where two
+            or more have a waveform and a start, what they overlap counts in W/R.
+        waveform: the current over time, where it is known.
+        shape: what the waveform is called in reports.
         name: what it is called in reports.
         standing: how firmly the values stand.
         source: where they come from.
@@ -62,6 +68,8 @@ class Stroke:
     name: str = ""
     standing: Standing = Standing.GIVEN
     source: Source | None = None
+    waveform: Waveform | None = None
+    shape: str = ""
 
     def __post_init__(self) -> None:
         problems: list[Problem] = []
@@ -88,9 +96,24 @@ class Stroke:
         """Whether it is a long stroke: by its duration, or because no current of this peak brings the charge sooner."""
         if self.duration is not None:
             return bool(np.all(np.asarray(self.duration) > LONG_STROKE))
-        if self.charge is not None and self.peak is not None:
-            return bool(np.all(np.asarray(self.charge) > LONG_STROKE * np.asarray(self.peak)))
+        charge, peak = self.value("charge"), self.value("peak")
+        if charge is not None and peak is not None:
+            return bool(np.all(np.asarray(charge) > LONG_STROKE * np.asarray(peak)))
         return False
+
+    @cached_property
+    def integrated(self) -> Mapping[str, Quantity]:
+        """What its waveform gives: ``peak``, ``charge`` and ``specific_energy``, in magnitude; empty without one."""
+        if self.waveform is None:
+            return {}
+        found = {"peak": self.waveform.peak, "charge": self.waveform.charge}
+        found["specific_energy"] = self.waveform.specific_energy
+        return {name: _plain(np.abs(value)) for name, value in found.items()}
+
+    def value(self, name: str) -> Quantity | None:
+        """Return a value: the given one, else the one integrated from the waveform, else None."""
+        given = getattr(self, name)
+        return given if given is not None else self.integrated.get(name)
 
     def through(self, share: Quantity) -> Stroke:
         """Return the part of it that flows through an object with this share of the current."""
@@ -103,6 +126,7 @@ class Stroke:
             peak=part(self.peak, share),
             charge=part(self.charge, share),
             specific_energy=part(self.specific_energy, share * share),
+            waveform=None if self.waveform is None else self.waveform * share,
         )
 
     def to_dict(self) -> dict[str, Any]:
@@ -110,7 +134,16 @@ class Stroke:
         out: dict[str, Any] = {name: _number(getattr(self, name), unit) for name, unit in _UNITS.items()}
         out |= {"name": self.name, "polarity": self.polarity, "type": "long" if self.is_long else "impulse"}
         out["standing"] = str(self.standing)
+        if self.waveform is not None:
+            out["shape"] = self.shape or repr(self.waveform)
+            out["integrated"] = {
+                name: _number(value, _UNITS[name]) for name, value in self.integrated.items()
+            }
         return out
+
+
+def _plain(value: Any) -> Quantity:
+    return cast(Quantity, value if np.ndim(value) else float(value))
 
 
 def _number(value: Quantity | None, unit: str) -> dict[str, Any]:
@@ -207,7 +240,27 @@ class Flash:
     def is_array(self) -> bool:
         """Whether it stands for many flashes at once."""
         values = (getattr(stroke, name) for stroke in self.strokes for name in _UNITS)
-        return any(np.ndim(value) > 0 for value in values if value is not None)
+        if any(np.ndim(value) > 0 for value in values if value is not None):
+            return True
+        return any(stroke.waveform is not None and stroke.waveform.shape for stroke in self.strokes)
+
+    @cached_property
+    def together(self) -> Sum | None:
+        """The strokes that have a waveform and a start, as one current; None where they are fewer than two."""
+        timed = [s for s in self.strokes if s.waveform is not None and s.start is not None]
+        if len(timed) < 2:
+            return None
+        return Sum([cast(Waveform, s.waveform) for s in timed], [cast(Quantity, s.start) for s in timed])
+
+    @property
+    def overlap(self) -> Quantity:
+        """What overlapping strokes add to the sum of their W/R (J/ohm): twice the integral of each product of currents."""
+        if self.together is None:
+            return 0.0
+        alone = [
+            s.waveform.specific_energy for s in self.strokes if s.waveform is not None and s.start is not None
+        ]
+        return _plain(self.together.specific_energy - _fold(np.add, alone))
 
     @property
     def peak(self) -> Quantity:
@@ -218,9 +271,12 @@ class Flash:
         """
         if "peak" in self.totals:
             return self.totals["peak"]
-        known = [s.peak for s in self.strokes if s.peak is not None]
-        if not known or any(s.peak is None and not s.is_long for s in self.strokes):
+        values = [s.value("peak") for s in self.strokes]
+        known = [value for value in values if value is not None]
+        if not known or any(v is None and not s.is_long for v, s in zip(values, self.strokes, strict=True)):
             raise self._missing("peak")
+        if self.together is not None:
+            known.append(_plain(np.abs(self.together.peak)))
         return _fold(np.maximum, known)
 
     @property
@@ -246,14 +302,15 @@ class Flash:
 
     @property
     def specific_energy(self) -> Quantity:
-        """Specific energy W/R of the whole flash (J/ohm): strokes follow one another without overlap.
+        """Specific energy W/R of the whole flash (J/ohm): that of the strokes, and what they overlap.
 
         A long stroke with a charge and a duration but without W/R counts as a rectangle, Q²/T (the least it can be).
 
         Raises:
             MissingInput: an impulse has no specific energy.
         """
-        return self._sum("specific_energy", self.strokes)
+        total = self._sum("specific_energy", self.strokes)
+        return total if "specific_energy" in self.totals else _plain(total + self.overlap)
 
     @property
     def polarity(self) -> int | None:
@@ -277,9 +334,9 @@ class Flash:
         return _fold(np.add, [self._value(name, stroke) for stroke in strokes])
 
     def _value(self, name: str, stroke: Stroke) -> Quantity:
-        value = getattr(stroke, name)
+        value = stroke.value(name)
         if value is not None:
-            return cast(Quantity, value)
+            return value
         if (
             name == "specific_energy"
             and stroke.is_long
@@ -291,7 +348,7 @@ class Flash:
 
     def _missing(self, name: str, stroke: Stroke | None = None) -> MissingInput:
         if stroke is None:
-            stroke = next((s for s in self.strokes if getattr(s, name) is None), self.strokes[0])
+            stroke = next((s for s in self.strokes if s.value(name) is None), self.strokes[0])
         number = self.strokes.index(stroke) + 1
         called = f"stroke {number}" + (f" ({stroke.name})" if stroke.name else "")
         example = {"peak": "100 kA", "charge": "50 C", "specific_energy": "2.5 MJ/ohm", "duration": "0.5 s"}[

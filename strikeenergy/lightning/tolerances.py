@@ -30,7 +30,7 @@ __all__ = [
     "tolerance_names",
 ]
 
-_UNITS = {
+SPECIFIED_UNITS = {
     "peak": "A",
     "front_time": "s",
     "half_value_time": "s",
@@ -141,9 +141,9 @@ def _specification(entry: dict[str, Any], cited: dict[str, Source]) -> Specifica
     firm = standing(entry["standing"])
     demands = []
     for quantity, row in entry.items():
-        if quantity not in _UNITS:
+        if quantity not in SPECIFIED_UNITS:
             continue
-        unit = _UNITS[quantity]
+        unit = SPECIFIED_UNITS[quantity]
         choices = {name: _factors(pair) for name, pair in row.get("tolerances", {}).items()}
         if "tolerance" in row:
             choices = {"": _factors(row["tolerance"])}
@@ -288,7 +288,7 @@ def _results(
             outcome,
             str(source),
             str(firm),
-            _UNITS[demand.quantity],
+            SPECIFIED_UNITS[demand.quantity],
             chosen,
             remark,
         )
