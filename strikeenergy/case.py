@@ -11,20 +11,34 @@ import tomllib
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field, replace
 from pathlib import Path
-from typing import Any
+from typing import Annotated, Any
+
+import numpy as np
 
 from strikeenergy.casetext import CaseError, locate, read_text, syntax_problem
 from strikeenergy.declared import validate
 from strikeenergy.errors import InputError, Problem, close_matches
 from strikeenergy.flashcase import build_flash
-from strikeenergy.inputs import StruckObject
+from strikeenergy.inputs import Part, StruckObject, Unit
 from strikeenergy.lightning.flash import Flash
 from strikeenergy.limit_tables import DEFAULT_STANDARD
 from strikeenergy.materials import PROPERTIES, Materials, material_names, own_material
 from strikeenergy.registry import Registry, load
 from strikeenergy.sources import Constant, Source, Standing
+from strikeenergy.units import Quantity
 
 __all__ = ["Case", "CaseError", "load_case", "make_case", "read_case"]
+
+
+class LedgerEntry(Part):
+    """[ledger]: the channel that the energy ledger holds the objects against."""
+
+    height: Annotated[Quantity, Unit("m", gt=0, le=3e4, typical=(1e3, 1e4), example="3 km")] = 3e3
+    """Height of the channel above the ground."""
+    ruler: Annotated[Quantity, Unit("m", gt=0, typical=(1, 500), example="50 m")] = 50.0
+    """Ruler with which the channel's length is measured: a shorter one sees more bends."""
+    dimension: Annotated[Quantity, Unit("", ge=1, lt=2, typical=(1.05, 1.4), example="1.1")] = 1.1
+    """Fractal dimension of the channel at that ruler; about 1.1 for the main channel, 1.34 for the branched pattern."""
 
 
 @dataclass
@@ -39,6 +53,7 @@ class Case:
         sha256: of the text it was read from.
         path: the file, or ``<stdin>``, or nothing.
         registry: the plugins it was read with.
+        ledger: what the energy ledger takes for the channel.
         materials: the built-in and own materials.
     """
 
@@ -49,6 +64,7 @@ class Case:
     sha256: str
     registry: Registry
     path: str = ""
+    ledger: LedgerEntry = field(default_factory=lambda: LedgerEntry())
     materials: Materials = field(default_factory=Materials)
 
     def __repr__(self) -> str:
@@ -115,7 +131,7 @@ def make_case(data: Mapping[str, Any], *, registry: Registry | None = None) -> C
 
 # -- building ----------------------------------------------------------------------------------------------
 
-_TOP = ("title", "standard", "flash", "object", "materials")
+_TOP = ("title", "standard", "flash", "object", "materials", "ledger")
 
 
 def _build(
@@ -144,10 +160,27 @@ def _build(
     materials = _materials(data.get("materials", {}), problems)
     flash = build_flash(data.get("flash"), threat_name, Path(name).parent, problems)
     objects = _objects(data.get("object"), registry, materials, problems)
-    if problems or flash is None:
+    ledger = (
+        validate(LedgerEntry, data["ledger"], ("ledger",), {}, problems)
+        if "ledger" in data
+        else LedgerEntry()
+    )
+    if ledger is not None and np.any(np.asarray(ledger.ruler) > ledger.height):
+        problems.append(
+            Problem("the ruler is longer than the channel is high", "give a shorter one", ("ledger", "ruler"))
+        )
+    if problems or flash is None or ledger is None:
         raise CaseError(problems)
     return Case(
-        title or Path(name).stem or "untitled", flash, objects, str(chosen), digest, registry, name, materials
+        title or Path(name).stem or "untitled",
+        flash,
+        objects,
+        str(chosen),
+        digest,
+        registry,
+        name,
+        ledger,
+        materials,
     )
 
 

@@ -15,6 +15,7 @@ from strikeenergy.case import Case
 from strikeenergy.errors import InputError, MissingInput, OutsideValidity, PluginError
 from strikeenergy.inputs import StruckObject
 from strikeenergy.lightning.flash import Flash
+from strikeenergy.lightning.ledger import Entry, Ledger, build_ledger
 from strikeenergy.limits import effect_verdict, reserves, size_verdicts
 from strikeenergy.note import Note
 from strikeenergy.plugin import Bracket, Criterion, Effect, Finding, Findings, Words
@@ -35,8 +36,41 @@ def estimate(case: Case) -> Estimate:
     objects = [run_object(thing, case.flash, registry, case.standard) for thing in case.objects]
     software = {"version": __version__, "plugins": registry.versions()}
     return Estimate(
-        case.title, case.sha256, case.flash, objects, list(registry.failures), software, case.standard
+        case.title,
+        case.sha256,
+        case.flash,
+        objects,
+        list(registry.failures),
+        software,
+        case.standard,
+        _ledger(case, objects),
     )
+
+
+def _ledger(case: Case, objects: list[ObjectResult]) -> Ledger | None:
+    """Enter the energy that goes into each object, as its effects declare it, beside that of the whole flash."""
+    entries: list[Entry] = []
+    for result in objects:
+        for effect in case.registry.effects_of(type(result.thing)):
+            for name, declared in effect.findings.items():
+                found = result.findings.get(name)
+                if declared.ledger and found is not None:
+                    entries += _entry(result, found, declared)
+    if not entries:
+        return None
+    channel = {name: float(getattr(case.ledger, name)) for name in ("height", "ruler", "dimension")}
+    return build_ledger(entries, **channel)
+
+
+def _entry(result: ObjectResult, found: FindingResult, declared: Finding) -> list[Entry]:
+    """Return the ledger entry of a finding; none where it has no value or is an array."""
+    length = getattr(result.thing, declared.along) if declared.along else 1.0
+    ends = (found.value if end is None else end for end in (found.low, found.high))
+    values = (found.value, *ends)
+    if length is None or any(v is None or np.ndim(v) for v in (*values, length)):
+        return []
+    energy, low, high = (float(v) * float(length) for v in values)
+    return [Entry(result.name, declared.ledger, energy, low, high)]
 
 
 def run_object(thing: StruckObject, flash: Flash, registry: Registry, standard: str) -> ObjectResult:

@@ -169,7 +169,9 @@ def _collected(make: Callable[[], _T], path: tuple[str | int, ...], problems: li
     try:
         return make()
     except InputError as error:
-        problems += [replace(p, path=(*path, *p.path)) for p in error.problems]
+        for p in error.problems:  # a record's own line stays with what is said of it
+            what = f"{p.place}: {p.what}" if p.place else p.what
+            problems.append(replace(p, what=what, place="", path=(*path, *p.path)))
         return None
 
 

@@ -6,6 +6,7 @@ import textwrap
 from collections.abc import Sequence
 from typing import Any
 
+from strikeenergy.case import LedgerEntry
 from strikeenergy.flashcase import FlashSection, StrokeEntry
 from strikeenergy.inputs import Part, parts_of, summary_of, unit_of, words_of
 from strikeenergy.lightning.threats import threat_names
@@ -141,6 +142,7 @@ def case_schema(registry: Registry) -> dict[str, Any]:
             "flash": flash,
             "object": {"type": "array", "minItems": 1, "items": {"oneOf": branches}},
             "materials": own_materials,
+            "ledger": LedgerEntry.model_json_schema(),
         },
         "$defs": definitions,
     }

@@ -75,12 +75,16 @@ class Finding:
         meaning: what it is, in one line.
         show: unit to show it in.
         bound: ``"upper"`` or ``"lower"`` where it is a bound and not an estimate.
+        ledger: ``"ohmic"``, ``"arc root"`` or ``"channel"`` where it is the energy that goes into the object.
+        along: the input (a length) by which an energy per length is multiplied for the ledger.
     """
 
     unit: str | None
     meaning: str
     show: str | None = None
     bound: str = ""
+    ledger: str = ""
+    along: str = ""
 
 
 @dataclass(frozen=True)

@@ -13,6 +13,7 @@ from strikeenergy.errors import ExitCode, PluginError
 from strikeenergy.formatting import engineering, format_number, format_quantity, pretty
 from strikeenergy.inputs import StruckObject
 from strikeenergy.lightning.flash import Flash
+from strikeenergy.lightning.ledger import Ledger
 from strikeenergy.note import Note
 from strikeenergy.plugin import Words
 from strikeenergy.units import convert, quantity
@@ -261,6 +262,8 @@ class Estimate:
     failures: list[PluginError]
     software: dict[str, Any]
     standard: str
+    ledger: Ledger | None = None
+    """The energy that goes into each object beside that of the whole flash; None where no object takes any."""
     cautions: tuple[str, ...] = CAUTIONS
 
     def __getitem__(self, name: str) -> ObjectResult:
@@ -305,6 +308,7 @@ class Estimate:
             "flash": self.flash.to_dict(),
             "objects": [result.to_dict() for result in self.objects],
             "failures": [failure_dict(failure) for failure in self.failures],
+            "ledger": self.ledger.to_dict() if self.ledger else None,
             "cautions": list(self.cautions),
             "software": self.software,
         }

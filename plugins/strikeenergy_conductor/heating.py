@@ -49,7 +49,7 @@ class Heating(Findings):
     melt_margin: Annotated[Value, Finding("", "specific energy at the onset of melting over the one applied")]
     section_to_melt: Annotated[Value, Finding("m**2", "section at which melting is just reached", "mm**2")]
     resistance: Annotated[Value, Finding("ohm", "resistance before the stroke")]
-    dissipated_energy: Annotated[Value, Finding("J", "heat that the conductor takes up")]
+    dissipated_energy: Annotated[Value, Finding("J", "heat that the conductor takes up", ledger="ohmic")]
 
 
 @effect(

@@ -43,7 +43,9 @@ class Melting(Findings):
         Value,
         Finding("m**3", "melted volume at most: all energy of the drop goes into melting", "mm**3", "upper"),
     ]
-    root_energy: Annotated[Value, Finding("J", "energy that the drop brings to the arc root")]
+    root_energy: Annotated[
+        Value, Finding("J", "energy that the drop brings to the arc root", ledger="arc root")
+    ]
 
 
 @effect(

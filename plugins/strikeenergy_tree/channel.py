@@ -65,6 +65,8 @@ class Channel(Findings):
         Finding(
             "J/m",
             "energy of an arc on the likelier of the two internal paths, if it is inside; with the assumed band",
+            ledger="channel",
+            along="height",
         ),
     ]
     damage_class: Annotated[

@@ -46,6 +46,8 @@ def estimate_text(estimate: Estimate) -> str:
         lines += wrap(f"{line}{f'  {governing.check}' if governing else ''}{margin}", " " * 6, "")
     for result in estimate.objects:
         lines += ["", *_object_lines(result)]
+    if estimate.ledger is not None:
+        lines += ["", *estimate.ledger.lines()]
     lines += ["", *_left_out(estimate)]
     if estimate.failures:
         lines += ["", "FAILED PLUGINS"]

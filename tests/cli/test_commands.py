@@ -138,6 +138,13 @@ def test_new_does_not_overwrite(tmp_path):
         (["threats"], "LPL IV"),
         (["threat", "LPL I"], "Table 3"),
         (["threat", "LPL I subsequent impulse"], "0.25/100"),
+        (["threat", "LPL I"], "short_charge 100 C positive: 9.1 %"),
+        (["threat", "component A"], "first return stroke"),
+        (["shapes"], "Heidler"),
+        (["populations"], "CIGRE TB 63"),
+        (["population", "IEC 62305-1"], "correlation"),
+        (["specifications"], "class H"),
+        (["specification", "class H"], "90 kA to 110 kA"),
         (["tables"], "Table 6"),
         (["table", "IEC 62305-3:2010 Table 6"], "note b"),
         (["table", "nfpa 780 class i materials"], "29 mm²"),
@@ -281,7 +288,7 @@ def test_another_encoding_of_the_console_does_not_matter():
 
 def test_help_examples_run(tmp_path):
     """Every example that a command's help shows does what it says."""
-    for name in ("estimate", "new", "describe", "schema", "plugins"):
+    for name in ("estimate", "record", "new", "describe", "schema", "plugins"):
         shown = command(name, "--help").stdout
         examples = re.findall(r"^\s+strikeenergy (.*)$", shown.split("Example")[1], re.M)
         assert examples, name

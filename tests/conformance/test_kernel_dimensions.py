@@ -7,7 +7,7 @@ import numpy as np
 import pytest
 
 from strikeenergy.note import Formula
-from strikeenergy.physics import adiabatic, arcroot, magnetics
+from strikeenergy.physics import adiabatic, arcroot, channel, magnetics
 from strikeenergy.units import registry
 
 UNITS = {
@@ -15,6 +15,7 @@ UNITS = {
     "w": "J/ohm", "W_on": "J/ohm", "W_full": "J/ohm", "alpha": "1/K", "rho0": "ohm*m", "q": "m**2", "rise": "K",
     "s": "A**2*s/m**4", "L": "J/kg", "rho_m": "ohm*m", "l": "m", "f": "", "u": "V", "Q": "C", "T_m": "K", "T_0": "K",
     "d": "m", "i2": "A**2", "x": "m", "x1": "m", "x2": "m", "r": "m", "mu0": "H/m",
+    "H": "m", "eps": "m", "D": "", "e": "J/m", "V": "V", "E": "J", "E_f": "J",
 }  # fmt: skip
 RESULTS = {
     "adiabatic.HEAT_PER_VOLUME": "J/(m**3*K)",
@@ -41,10 +42,15 @@ RESULTS = {
     "arcroot.MELTED_VOLUME_BOUND": "m**3",
     "arcroot.ROOT_ENERGY": "J",
     "arcroot.SPREAD_MELT_RADIUS": "m",
+    "channel.LENGTH": "m",
+    "channel.ENERGY": "J",
+    "channel.ENERGY_FALLEN": "J",
+    "channel.ENERGY_DISCHARGED": "J",
+    "channel.SHARE": "",
 }
 LAWS = {
     f"{module.__name__.rsplit('.', 1)[-1]}.{name}": law
-    for module in (adiabatic, magnetics, arcroot)
+    for module in (adiabatic, magnetics, arcroot, channel)
     for name, law in vars(module).items()
     if isinstance(law, Formula)
 }

@@ -9,11 +9,11 @@ from hypothesis import strategies as st
 
 from strikeenergy import physics
 from strikeenergy.note import Formula
-from strikeenergy.physics import adiabatic, arcroot, magnetics
+from strikeenergy.physics import adiabatic, arcroot, channel, magnetics
 
 LAWS = [
     (f"{module.__name__.rsplit('.', 1)[-1]}.{name}", law)
-    for module in (adiabatic, magnetics, arcroot)
+    for module in (adiabatic, magnetics, arcroot, channel)
     for name, law in vars(module).items()
     if isinstance(law, Formula)
 ]
