@@ -207,7 +207,7 @@ def record(
       strikeenergy record cases/mast-shot.csv --scale "10 kA/V" --spec "LPL III first positive impulse"
     """
     from strikeenergy.lightning import record as reading
-    from strikeenergy.lightning.reduce import reduce
+    from strikeenergy.lightning.reduction import reduce
     from strikeenergy.lightning.tolerances import check
     from strikeenergy.report import recorded
     from strikeenergy.report.machine import to_json

@@ -9,7 +9,7 @@ from strikeenergy import describe_lightning as lightning
 from strikeenergy.errors import UnknownName
 from strikeenergy.formatting import format_quantity, pretty
 from strikeenergy.inputs import Part, default_text, parts_of, summary_of, unit_of, words_of
-from strikeenergy.lightning.population import population_names
+from strikeenergy.lightning.populations import population_names
 from strikeenergy.lightning.threats import threat_names
 from strikeenergy.lightning.tolerances import specification_names
 from strikeenergy.lightning.waveform import SHAPES

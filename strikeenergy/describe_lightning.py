@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from strikeenergy.formatting import format_number, format_quantity, pretty
 from strikeenergy.lightning.flash import Flash, Stroke
-from strikeenergy.lightning.population import population, population_names, rarity
+from strikeenergy.lightning.populations import population, population_names, rarity
 from strikeenergy.lightning.threats import COMPONENTS, Component, levels, single_components, threat
 from strikeenergy.lightning.tolerances import (
     SPECIFIED_UNITS,

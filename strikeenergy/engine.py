@@ -7,7 +7,7 @@ effect that lacks an input, or whose model does not cover the object, becomes a 
 from __future__ import annotations
 
 from collections.abc import Mapping
-from typing import Any
+from typing import Any, cast
 
 import numpy as np
 
@@ -15,7 +15,7 @@ from strikeenergy.case import Case
 from strikeenergy.errors import InputError, MissingInput, OutsideValidity, PluginError
 from strikeenergy.inputs import StruckObject
 from strikeenergy.lightning.flash import Flash
-from strikeenergy.lightning.ledger import Entry, Ledger, build_ledger
+from strikeenergy.lightning.ledger import Entry, Ledger, Sort, build_ledger
 from strikeenergy.limits import effect_verdict, reserves, size_verdicts
 from strikeenergy.note import Note
 from strikeenergy.plugin import Bracket, Criterion, Effect, Finding, Findings, Words
@@ -70,7 +70,7 @@ def _entry(result: ObjectResult, found: FindingResult, declared: Finding) -> lis
     if length is None or any(v is None or np.ndim(v) for v in (*values, length)):
         return []
     energy, low, high = (float(v) * float(length) for v in values)
-    return [Entry(result.name, declared.ledger, energy, low, high)]
+    return [Entry(result.name, cast(Sort, declared.ledger), energy, low, high)]
 
 
 def run_object(thing: StruckObject, flash: Flash, registry: Registry, standard: str) -> ObjectResult:

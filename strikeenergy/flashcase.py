@@ -14,10 +14,10 @@ from strikeenergy.declared import validate
 from strikeenergy.errors import InputError, Problem
 from strikeenergy.formatting import format_quantity
 from strikeenergy.inputs import Part, Unit
-from strikeenergy.lightning.fit import fit
+from strikeenergy.lightning.fitting import fit
 from strikeenergy.lightning.flash import Flash, Stroke
 from strikeenergy.lightning.record import read_record
-from strikeenergy.lightning.reduce import Reduction, corrected, reduce
+from strikeenergy.lightning.reduction import Reduction, corrected, reduce
 from strikeenergy.lightning.threats import threat
 from strikeenergy.lightning.waveform import SHAPES, Sampled, Waveform, from_shape
 from strikeenergy.units import Quantity

@@ -13,12 +13,12 @@ from importlib import import_module
 from typing import TYPE_CHECKING, Any
 
 if TYPE_CHECKING:
-    from strikeenergy.lightning.fit import fit as fit
+    from strikeenergy.lightning.fitting import fit as fit
     from strikeenergy.lightning.flash import Flash as Flash
     from strikeenergy.lightning.flash import Stroke as Stroke
-    from strikeenergy.lightning.population import population as population
+    from strikeenergy.lightning.populations import population as population
     from strikeenergy.lightning.record import read_record as read_record
-    from strikeenergy.lightning.reduce import reduce as reduce
+    from strikeenergy.lightning.reduction import reduce as reduce
     from strikeenergy.lightning.threats import threat as threat
     from strikeenergy.lightning.waveform import ConcaveFront as ConcaveFront
     from strikeenergy.lightning.waveform import DoubleExponential as DoubleExponential
@@ -39,14 +39,15 @@ _SHAPES = (
 _HOMES = {
     "Flash": "flash",
     "Stroke": "flash",
+    "fit": "fitting",
+    "population": "populations",
     "read_record": "record",
+    "reduce": "reduction",
     "threat": "threats",
     **dict.fromkeys(_SHAPES, "waveform"),
 }
-_CALLABLE = ("fit", "population", "reduce")
-"""Functions that have the name of their module: asked of the package, they are the function."""
 
-__all__ = [*_HOMES, *_CALLABLE]
+__all__ = list(_HOMES)
 
 
 def __getattr__(name: str) -> Any:

@@ -8,7 +8,7 @@ from typing import Any
 import numpy as np
 
 from strikeenergy.formatting import engineering, format_quantity, pretty
-from strikeenergy.lightning.reduce import Reduction
+from strikeenergy.lightning.reduction import Reduction
 from strikeenergy.units import convert
 
 __all__ = ["write_record_svg"]

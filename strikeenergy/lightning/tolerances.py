@@ -16,7 +16,7 @@ from functools import lru_cache
 from typing import Any, cast
 
 from strikeenergy.errors import DataError, InputError, Problem, StrikeEnergyError, UnknownName
-from strikeenergy.lightning.reduce import Reduction
+from strikeenergy.lightning.reduction import Reduction
 from strikeenergy.sources import Source, Standing, weakest
 from strikeenergy.tables import read_table, standing
 from strikeenergy.units import read

@@ -9,7 +9,7 @@ from typing import Any
 
 from strikeenergy.formatting import format_quantity
 from strikeenergy.lightning.record import Record
-from strikeenergy.lightning.reduce import Measured, Reduction
+from strikeenergy.lightning.reduction import Measured, Reduction
 from strikeenergy.lightning.tolerances import ToleranceResult
 from strikeenergy.report.text import wrap
 

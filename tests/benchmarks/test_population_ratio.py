@@ -12,7 +12,7 @@ import numpy as np
 import pytest
 
 from strikeenergy.lightning.distributions import Correlation
-from strikeenergy.lightning.population import population
+from strikeenergy.lightning.populations import population
 
 N = 1_000_000
 LN10 = np.log(10.0)

@@ -15,7 +15,7 @@ pytestmark = [pytest.mark.benchmark, pytest.mark.slow]
 CHILD = """
 import json, os, resource, sys, time
 from strikeenergy.lightning.record import read_record
-from strikeenergy.lightning.reduce import reduce
+from strikeenergy.lightning.reduction import reduce
 from strikeenergy.units import scale
 scale("kA"), scale("us")
 

@@ -11,7 +11,7 @@ import pytest
 from scipy.integrate import quad
 from scipy.optimize import least_squares
 
-from strikeenergy.lightning.fit import fit
+from strikeenergy.lightning.fitting import fit
 from strikeenergy.lightning.waveform import Heidler
 from strikeenergy.physics import pulses
 

@@ -9,7 +9,7 @@ from hypothesis import strategies as st
 
 from strikeenergy.errors import InputError
 from strikeenergy.lightning.distributions import Correlation, JointLaw, LogNormal, Mixture, TwoSlopeLogNormal
-from strikeenergy.lightning.population import COMPONENTS, population, population_names
+from strikeenergy.lightning.populations import COMPONENTS, population, population_names
 
 medians = st.floats(1e-6, 1e9)
 sigmas = st.floats(0.05, 3.0)

@@ -5,7 +5,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from strikeenergy.lightning.fit import fit
+from strikeenergy.lightning.fitting import fit
 from strikeenergy.lightning.waveform import (
     ConcaveFront,
     DoubleExponential,

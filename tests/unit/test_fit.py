@@ -8,7 +8,7 @@ from scipy.integrate import quad
 from scipy.optimize import least_squares
 
 from strikeenergy.errors import InputError
-from strikeenergy.lightning.fit import fit
+from strikeenergy.lightning.fitting import fit
 from strikeenergy.lightning.waveform import Heidler, LinearFront, Sum, Trapezoid
 
 US = 1e-6

@@ -18,7 +18,7 @@ from strikeenergy.lightning.distributions import (
     StrokeNumber,
     TwoSlopeLogNormal,
 )
-from strikeenergy.lightning.population import (
+from strikeenergy.lightning.populations import (
     QUANTITIES,
     Population,
     population,
@@ -481,7 +481,7 @@ def test_rarity_refuses_what_is_no_value():
 
 
 def test_importing_does_not_load_scipy():
-    code = "import sys, strikeenergy.lightning.population; print('scipy' in sys.modules)"
+    code = "import sys, strikeenergy.lightning.populations; print('scipy' in sys.modules)"
     assert (
         subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=True).stdout
         == "False\n"

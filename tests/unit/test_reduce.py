@@ -10,7 +10,7 @@ from strikeenergy.errors import InputError, UnknownName
 from strikeenergy.lightning import tolerances
 from strikeenergy.lightning.record import Record
 from strikeenergy.lightning.record_plot import write_record_svg
-from strikeenergy.lightning.reduce import corrected, reduce
+from strikeenergy.lightning.reduction import corrected, reduce
 
 NAMES = ("peak", "front_time", "half_value_time", "charge", "specific_energy")
 

@@ -16,7 +16,7 @@ import pytest
 from scipy import stats
 
 from strikeenergy.lightning.distributions import Correlation, JointLaw, LogNormal, TwoSlopeLogNormal
-from strikeenergy.lightning.population import population
+from strikeenergy.lightning.populations import population
 
 FIRST, SUBSEQUENT, POSITIVE, SEVERAL = "first negative", "subsequent", "positive", "negative, several strokes"
 

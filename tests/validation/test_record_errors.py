@@ -15,7 +15,7 @@ import numpy as np
 import pytest
 
 from strikeenergy.lightning.record import Record
-from strikeenergy.lightning.reduce import reduce
+from strikeenergy.lightning.reduction import reduce
 
 FIRST_POSITIVE = (200e3, 0.93, 19e-6, 485e-6)
 FIRST_NEGATIVE = (100e3, 0.986, 1.82e-6, 285e-6)
