@@ -26,7 +26,7 @@ from strikeenergy.plugin import (
 )
 from strikeenergy.sources import Constant, Source, Standing, source
 from strikeenergy.tables import constant, data_file, read_table
-from strikeenergy.units import Quantity, awg_section
+from strikeenergy.units import Quantity, awg_number, awg_section
 
 __all__ = [
     "API_VERSION",
@@ -57,6 +57,7 @@ __all__ = [
     "Unit",
     "Value",
     "Words",
+    "awg_number",
     "awg_section",
     "constant",
     "data_file",

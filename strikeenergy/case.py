@@ -8,7 +8,7 @@ from __future__ import annotations
 import hashlib
 import os
 import tomllib
-from collections.abc import Mapping, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass, field, replace
 from pathlib import Path
 from typing import Annotated, Any
@@ -55,6 +55,7 @@ class Case:
         registry: the plugins it was read with.
         ledger: what the energy ledger takes for the channel.
         materials: the built-in and own materials.
+        skipped: objects that are left out because their kind's plugin failed to load.
     """
 
     title: str
@@ -66,6 +67,7 @@ class Case:
     path: str = ""
     ledger: LedgerEntry = field(default_factory=lambda: LedgerEntry())
     materials: Materials = field(default_factory=Materials)
+    skipped: tuple[str, ...] = ()
 
     def __repr__(self) -> str:
         return f"<Case {self.title!r}: {len(self.objects)} objects, {self.flash.name or 'given strokes'}>"
@@ -108,6 +110,10 @@ def read_case(
         data = tomllib.loads(text)
     except tomllib.TOMLDecodeError as error:
         raise CaseError([syntax_problem(text, name, error)]) from None
+    except ValueError:
+        raise CaseError(
+            [Problem("a number has too many digits", "write it with an exponent, such as 1e6", place=name)]
+        ) from None
     except RecursionError:
         raise CaseError([Problem("the brackets are nested too deeply for a case file", place=name)]) from None
     digest = hashlib.sha256(text.encode()).hexdigest()
@@ -131,6 +137,7 @@ def make_case(data: Mapping[str, Any], *, registry: Registry | None = None) -> C
 
 # -- building ----------------------------------------------------------------------------------------------
 
+_LONGEST_NAME = 120
 _TOP = ("title", "standard", "flash", "object", "materials", "ledger")
 
 
@@ -151,15 +158,20 @@ def _build(
     if not isinstance(title, str):
         problems.append(Problem("the title is a text", 'write title = "..."', ("title",)))
         title = ""
-    chosen = standard or data.get("standard", DEFAULT_STANDARD)
+    problems += [replace(p, path=("title",)) for p in _name_problems(title)]
+    chosen = standard if standard is not None else data.get("standard", DEFAULT_STANDARD)
     try:
         chosen = registry.standard(str(chosen))
     except InputError as error:
-        where = "--standard" if standard else "standard"
+        where = "--standard" if standard is not None else "standard"
         problems += [replace(p, path=(where,)) for p in error.problems]
     materials = _materials(data.get("materials", {}), problems)
     flash = build_flash(data.get("flash"), threat_name, Path(name).parent, problems)
-    objects = _objects(data.get("object"), registry, materials, problems)
+    skipped: list[str] = []
+    objects = _objects(data.get("object"), registry, materials, problems, skipped)
+    if skipped and not objects and not problems:
+        told = "; ".join(str(failure) for failure in registry.failures)
+        problems += [Problem(text, f"mend the plugin: {told}", ("object",)) for text in skipped]
     ledger = (
         validate(LedgerEntry, data["ledger"], ("ledger",), {}, problems)
         if "ledger" in data
@@ -181,6 +193,7 @@ def _build(
         name,
         ledger,
         materials,
+        tuple(skipped),
     )
 
 
@@ -199,6 +212,8 @@ def _materials(data: Any, problems: list[Problem]) -> Materials:
     table = _table(data, ("materials",), problems, 'write [materials."my alloy"]') or {}
     for name, entries in table.items():
         path = ("materials", name)
+        if not name.strip():
+            problems.append(Problem("the material has no name", 'write [materials."my alloy"]', path))
         row = _table(entries, path, problems, f'write [materials."{name}"] and its properties below')
         if row is None:
             continue
@@ -234,7 +249,11 @@ def _materials(data: Any, problems: list[Problem]) -> Materials:
         for key, constant in own[name].items():
             if constant.value < 0 or (constant.value == 0 and key != "temperature_coefficient"):
                 problems.append(
-                    Problem(f"{PROPERTIES[key][1]} must be above 0", "check the value", (*path, key))
+                    Problem(
+                        f"{PROPERTIES[key][1]} must {'not be below' if key == 'temperature_coefficient' else 'be above'} 0",
+                        "check the value",
+                        (*path, key),
+                    )
                 )
     return Materials(own, families)
 
@@ -261,15 +280,15 @@ def _own_value(
     if not isinstance(source, str) or not source.strip():
         problems.append(Problem("the source is missing", write, path))
         return None, ""
-    if "unit" in entry and isinstance(value, (int, float)) and not isinstance(value, bool):
-        value = f"{value!r} {entry['unit']}"
+    if "unit" in entry and isinstance(value, (int, float, str)) and not isinstance(value, bool):
+        value = f"{value} {entry['unit']}"
     if value is None:
         problems.append(Problem("the value is missing", write, path))
     return value, str(source or "")
 
 
 def _objects(
-    data: Any, registry: Registry, materials: Materials, problems: list[Problem]
+    data: Any, registry: Registry, materials: Materials, problems: list[Problem], skipped: list[str]
 ) -> list[StruckObject]:
     kinds = ", ".join(registry.kinds)
     write = f"write [[object]] and kind = one of {kinds}"
@@ -287,20 +306,42 @@ def _objects(
         if table is None:
             continue
         name = table.get("name")
-        if isinstance(name, str) and name.strip():
-            if name in seen:
-                problems.append(
-                    Problem(
-                        f"the name {name!r} is that of object {seen[name] + 1} as well",
-                        "give each object a name of its own",
-                        (*path, "name"),
-                    )
+        called = _default_name(table, number)
+        if isinstance(name, str):
+            problems += [replace(p, path=(*path, "name")) for p in _name_problems(name)]
+        if called.casefold() in seen:
+            other = seen[called.casefold()] + 1
+            problems.append(
+                Problem(
+                    f"the name {called!r} is that of object {other} as well",
+                    "give each object a name of its own",
+                    (*path, "name"),
                 )
-            seen.setdefault(name, number)
-        thing = _object(table, number, path, registry, materials, problems)
+            )
+        seen.setdefault(called.casefold(), number)
+        thing = _object(table, number, path, registry, materials, problems, skipped)
         if thing is not None:
             out.append(thing)
     return out
+
+
+def _default_name(table: Mapping[str, Any], number: int) -> str:
+    name = table.get("name")
+    return (
+        name.strip()
+        if isinstance(name, str) and name.strip()
+        else f"{table.get('kind', 'object')} {number + 1}"
+    )
+
+
+def _name_problems(name: str) -> Iterable[Problem]:
+    """Hold a name or title: it is printed in one line, and must not carry control characters to a terminal."""
+    if not name.isprintable() or any("\u202a" <= c <= "\u202e" or "\u2066" <= c <= "\u2069" for c in name):
+        yield Problem(
+            "it holds characters that cannot be printed", "write it in one line, without control characters"
+        )
+    if len(name) > _LONGEST_NAME:
+        yield Problem(f"it is {len(name)} characters long", f"use at most {_LONGEST_NAME}")
 
 
 def _object(
@@ -310,6 +351,7 @@ def _object(
     registry: Registry,
     materials: Materials,
     problems: list[Problem],
+    skipped: list[str],
 ) -> StruckObject | None:
     if "kind" not in table:
         problems.append(
@@ -321,11 +363,18 @@ def _object(
     try:
         kind = registry.kind(str(table["kind"]))
     except InputError as error:
-        problems += [replace(p, path=(*path, "kind")) for p in error.problems]
+        if registry.failures:  # its plugin may be the one that failed: the rest stands
+            skipped.append(
+                f"{_default_name(table, number)}: there is no kind {table['kind']!r}, and a plugin failed to load"
+            )
+        else:
+            problems += [replace(p, path=(*path, "kind")) for p in error.problems]
         return None
-    named = dict(table)
-    if not str(named.get("name", "")).strip():
-        named["name"] = f"{table['kind']} {number + 1}"
+    named = (
+        {**table, "name": _default_name(table, number)}
+        if isinstance(table.get("name", ""), str)
+        else dict(table)
+    )
     context = {"materials": materials, "collect": True}
     found: list[Problem] = []
     thing = validate(kind, named, path, context, found)

@@ -8,6 +8,7 @@ import sys
 import tomllib
 from collections.abc import Mapping, Sequence
 from difflib import get_close_matches
+from functools import lru_cache
 from pathlib import Path
 from typing import Any
 
@@ -119,12 +120,49 @@ def syntax_problem(text: str, name: str, error: tomllib.TOMLDecodeError) -> Prob
     return Problem(f"not valid TOML: {what[0].lower() + what[1:]}", hint, place=f"{name}:{number}")
 
 
+@lru_cache(maxsize=4)
+def _parsed(text: str) -> dict[str, Any]:
+    return tomllib.loads(text)
+
+
 def locate(text: str, path: Sequence[str | int]) -> int:
     """Return the line (from 1) of the statement that first defines the longest existing prefix of a key path.
 
     The standard parser is its own oracle: the line is where the shortest parseable prefix of the text first contains
-    the path, found by bisection. A missing key points at its table.
+    the path, found by bisection. A missing key points at its table. In a long file only the object's own lines are
+    searched, where they can be told by their headings.
     """
+    if len(path) > 1 and path[0] == "object" and isinstance(path[1], int):
+        span = _object_lines(text, path[1])
+        if span is not None:
+            begin, own = span
+            return begin + _search(own, ("object", 0, *path[2:]))
+    return _search(text, path)
+
+
+def _object_lines(text: str, number: int) -> tuple[int, str] | None:
+    """Return where an [[object]] begins (lines before it) and its lines; None where they do not parse to that object."""
+    heads = _headings(text)
+    objects = _parsed(text).get("object")
+    if not isinstance(objects, list) or len(heads) != len(objects) or number >= len(heads):
+        return None
+    lines = text.split("\n")
+    end = heads[number + 1] if number + 1 < len(heads) else len(lines)
+    own = "\n".join(lines[heads[number] : end])
+    try:
+        found = tomllib.loads(own)["object"][0]
+    except (tomllib.TOMLDecodeError, KeyError):
+        return None
+    return (heads[number], own) if found == objects[number] else None
+
+
+@lru_cache(maxsize=4)
+def _headings(text: str) -> tuple[int, ...]:
+    pattern = re.compile(r"\s*\[\[\s*object\s*\]\]")
+    return tuple(number for number, line in enumerate(text.split("\n")) if pattern.match(line))
+
+
+def _search(text: str, path: Sequence[str | int]) -> int:
     lines = text.split("\n")
 
     def has(data: Any, keys: Sequence[Any]) -> bool:
@@ -143,7 +181,7 @@ def locate(text: str, path: Sequence[str | int]) -> int:
         except tomllib.TOMLDecodeError:
             return None
 
-    whole = tomllib.loads(text)
+    whole = _parsed(text)
     keys = list(path)
     while keys and not has(whole, keys):
         keys.pop()

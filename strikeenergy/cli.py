@@ -3,7 +3,9 @@
 from __future__ import annotations
 
 import os
+import shlex
 import sys
+import tempfile
 import traceback
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
@@ -44,12 +46,16 @@ def main() -> None:
 
 def run(arguments: list[str] | None = None) -> int:
     """Run the command line and return the exit code. The one place where errors become codes."""
+    for name in ("stdin", "stdout", "stderr"):
+        if getattr(sys, name) is None:  # closed by whoever started the program
+            setattr(sys, name, open(os.devnull, "r" if name == "stdin" else "w"))  # noqa: SIM115
     for stream in (sys.stdout, sys.stderr):
         reconfigure = getattr(stream, "reconfigure", None)
         if reconfigure is not None:  # a redirected stream may have another encoding, which has no Ω
             reconfigure(encoding="utf-8")
     try:
         value = main.main(args=arguments, prog_name="strikeenergy", standalone_mode=False)
+        sys.stdout.flush()
         return int(value) if isinstance(value, int) else int(ExitCode.OK)
     except click.exceptions.Exit as stop:
         return stop.exit_code
@@ -68,6 +74,9 @@ def run(arguments: list[str] | None = None) -> int:
     except KeyboardInterrupt:
         click.echo("Interrupted.", err=True)
         return 130
+    except OSError as error:
+        click.echo(f"The output cannot be written: {error.strerror or error}", err=True)
+        return int(ExitCode.MISUSE)
     except Exception as error:
         if os.environ.get("STRIKEENERGY_TRACEBACK"):
             traceback.print_exc()
@@ -92,13 +101,24 @@ def _write(text: str, output: str | None, force: bool = False) -> None:
     target = Path(output)
     if target.exists() and not force:
         raise click.UsageError(f"{output} exists; name another file or give --force")
-    beside = target.with_name(target.name + ".part")
     try:
-        beside.write_text(text, encoding="utf-8")
-        beside.replace(target)
+        if target.exists() and not target.is_file():  # a device or a pipe is written to, not replaced
+            target.write_text(text, encoding="utf-8")
+            return
+        target = target.resolve()
+        with tempfile.NamedTemporaryFile("w", encoding="utf-8", dir=target.parent, delete=False) as beside:
+            try:
+                beside.write(text)
+                beside.close()
+                Path(beside.name).chmod(0o644)
+                Path(beside.name).replace(target)
+            except BaseException:
+                Path(beside.name).unlink(missing_ok=True)
+                raise
     except OSError as error:
-        beside.unlink(missing_ok=True)
-        raise click.UsageError(f"{output} cannot be written: {error.strerror or error}") from None
+        raise click.UsageError(
+            f"{output or 'the output'} cannot be written: {error.strerror or error}"
+        ) from None
 
 
 @main.command()
@@ -259,7 +279,7 @@ def new(kind: str, output: str | None, force: bool) -> int:
     _show_failures(registry.failures)
     _write(new_case(registry, kind), output, force)
     if output not in (None, "-"):
-        click.echo(f"Wrote {output}. Next: strikeenergy estimate {output}", err=True)
+        click.echo(f"Wrote {output}. Next: strikeenergy estimate {shlex.quote(str(output))}", err=True)
     return _load_code(registry)
 
 

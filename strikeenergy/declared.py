@@ -10,7 +10,7 @@ from typing import Any, TypeVar
 from pydantic import ValidationError
 
 from strikeenergy.errors import Problem, close_matches, spell_path
-from strikeenergy.inputs import Part
+from strikeenergy.inputs import Part, unit_of
 
 __all__ = ["validate"]
 
@@ -36,8 +36,9 @@ def validate(
     try:
         return model.model_validate(_tuples(table), context=context)
     except ValidationError as error:
-        for item in error.errors(include_url=False):
-            problems.append(_problem(dict(item), path, model))
+        found = [_problem(dict(item), path, model) for item in error.errors(include_url=False)]
+        # a field that may be of two types fails twice: told once
+        problems += list({(p.path, p.what): p for p in found}.values())
         return None
 
 
@@ -62,13 +63,13 @@ def _problem(item: dict[str, Any], path: tuple[str | int, ...], model: type[Part
             "unknown key", close_matches(str(item["loc"][-1]), _fields_at(model, item["loc"][:-1])), where
         )
     if sort == "missing":
-        return Problem("it is missing", f"give {item['loc'][-1]}", where)
+        return Problem("it is missing", _example(model, item["loc"]), where)
     if sort == "literal_error":
         near = get_close_matches(str(item["input"]), re.findall(r"'([^']*)'", context["expected"]), n=1)
         hint = f"did you mean {near[0]!r}?" if near else f"write {context['expected']}"
         return Problem(f"{item['input']!r} is not one of them", hint, where)
     if sort in ("tuple_type", "model_type", "model_attributes_type"):
-        several = sort == "tuple_type"
+        several = sort == "tuple_type" or isinstance(item["loc"][-1], int)
         name = spell_path([p for p in where if not isinstance(p, int)])
         return Problem(
             "a list of tables is due here" if several else "a table is due here",
@@ -76,7 +77,11 @@ def _problem(item: dict[str, Any], path: tuple[str | int, ...], model: type[Part
             where,
         )
     if sort in ("string_type", "int_type"):
-        return Problem(f"{item['input']!r} is of the wrong type", "write a text in quotes", where)
+        return Problem(
+            f"{item['input']!r} is of the wrong type",
+            "write a text in quotes, or a whole number where one is due",
+            where,
+        )
     return Problem(str(item["msg"]), "", where)
 
 
@@ -92,3 +97,15 @@ def _model_in(annotation: Any) -> type[Part] | None:
     if isinstance(annotation, type) and issubclass(annotation, Part):
         return annotation
     return next((m for a in getattr(annotation, "__args__", ()) if (m := _model_in(a))), None)
+
+
+def _example(model: type[Part], loc: Sequence[str | int]) -> str:
+    """Say what to write for a field that is missing."""
+    owner: Any = model
+    for part in loc[:-1]:
+        if isinstance(part, str) and part in owner.model_fields:
+            owner = _model_in(owner.model_fields[part].annotation) or owner
+    name = str(loc[-1])
+    mark = unit_of(owner, name)
+    text = mark.text if mark is not None else {"material": "copper"}.get(name, "")
+    return f"give {name}" + (f", such as {name} = {text!r}" if text else "")

@@ -6,7 +6,10 @@ effect that lacks an input, or whose model does not cover the object, becomes a 
 
 from __future__ import annotations
 
+import contextlib
+import sys
 from collections.abc import Mapping
+from dataclasses import replace
 from typing import Any, cast
 
 import numpy as np
@@ -43,6 +46,7 @@ def estimate(case: Case) -> Estimate:
         list(registry.failures),
         software,
         case.standard,
+        case.skipped,
         _ledger(case, objects),
     )
 
@@ -107,8 +111,18 @@ def run_object(thing: StruckObject, flash: Flash, registry: Registry, standard: 
 def _compare(result: ObjectResult, criterion: Criterion, flash: Flash, sizes: list[Verdict]) -> None:
     verdict = effect_verdict(criterion, result.findings, flash)
     if verdict is not None:
-        result.verdicts.append(verdict)
+        result.verdicts.append(replace(verdict, rank=_rank(result, criterion)))
     result.verdicts += reserves(criterion, result.findings, sizes)
+
+
+def _rank(result: ObjectResult, criterion: Criterion) -> float | None:
+    """Return the object's size over the smallest one that the criterion needs, where both are known."""
+    if not criterion.size or not criterion.smallest:
+        return None
+    size, needed = result.thing.sizes().get(criterion.size), result.findings[criterion.smallest].value
+    if size is None or needed is None or np.ndim(size) or np.ndim(needed) or not needed:
+        return None
+    return float(size) / float(needed)
 
 
 def _guarded(result: ObjectResult, effect: Effect, registry: Registry, run: Any) -> bool:
@@ -147,7 +161,9 @@ def run_effect(effect: Effect, thing: StruckObject, flash: Flash, note: Note) ->
     """
     for text in effect.leaves_out:
         note.leaves_out(text)
-    results = effect.function(thing, flash, note)
+    # What a plugin prints goes where messages go; what overflows is told by the check of its findings.
+    with contextlib.redirect_stdout(sys.stderr), np.errstate(all="ignore"):
+        results = effect.function(thing, flash, note)
     if not isinstance(results, effect.results):
         raise TypeError(f"it returned {type(results).__name__} and declares {effect.results.__name__}")
     return {

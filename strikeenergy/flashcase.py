@@ -186,6 +186,15 @@ def _strokes(entries: tuple[StrokeEntry, ...], problems: list[Problem]) -> Flash
             stroke = _collected(partial(_stroke, entry, polarity, remarks), path, problems)
             if stroke is not None:
                 strokes.append(stroke)
+    starts = [float(s.start) for s in strokes if s.start is not None]
+    if starts != sorted(starts):
+        problems.append(
+            Problem(
+                "the strokes are not in time order",
+                "write them in the order of their starts",
+                ("flash", "stroke"),
+            )
+        )
     return Flash(tuple(strokes), remarks=tuple(remarks)) if strokes else None
 
 

@@ -43,6 +43,9 @@ __all__ = [
 ]
 
 
+_FAR = 1e4
+
+
 @dataclass(frozen=True)
 class Unit:
     """The declaration of one input: its unit, its hard limits and its usual range, all in ``unit``.
@@ -50,7 +53,7 @@ class Unit:
     Args:
         unit: ``"mm**2"``; ``"degC"`` makes it a temperature (in kelvin inside), ``"K"`` a difference, ``""`` a plain number.
         gt, ge, lt, le: hard limits; beyond them the value is refused.
-        typical: the range for tests and documentation; not a limit.
+        typical: the range for tests and documentation. Not a limit; only what lies ten thousand times outside is refused.
         example: the text to show in messages and in a new case.
         wire: also take wire sizes such as ``"6 AWG"``.
     """
@@ -113,6 +116,11 @@ class Unit:
         ):
             if limit is not None:
                 bad |= outside(array, found.to_si(limit))
+        far = self._far(array)
+        if far.any() and not bad.any():
+            low, high = (f"{end:g} {pretty(self.unit)}".strip() for end in self.typical or (0, 0))
+            what = f"{shown!r}" if isinstance(shown, str) else f"{shown}"
+            raise InputError([Problem(f"{what} is outside any physical range (usual are {low} to {high})", "check the number and its unit")])  # fmt: skip
         if bad.any():
             what = (
                 f"{shown!r}"
@@ -124,6 +132,14 @@ class Unit:
             raise InputError(
                 [Problem(f"{what} must be {self.range_text}", f"write a value such as {self.text!r}")]
             )
+
+    def _far(self, array: np.ndarray[Any, Any]) -> np.ndarray[Any, Any]:
+        """Where a quantity that cannot be negative lies ten thousand times outside its usual range."""
+        if self.typical is None or (self.gt != 0 and self.ge != 0):
+            return np.zeros(array.shape, dtype=bool)
+        found = scale(self.unit)
+        low, high = (found.to_si(end) for end in self.typical)
+        return np.asarray((array > high * _FAR) | ((array < low / _FAR) & (array > 0)))
 
     def __get_pydantic_core_schema__(self, source: Any, handler: GetCoreSchemaHandler) -> CoreSchema:
         return core_schema.no_info_plain_validator_function(_as_custom_error(self.read))

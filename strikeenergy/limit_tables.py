@@ -41,6 +41,8 @@ class Variant:
     quantity: str
     when: Mapping[str, Any]
     say: str
+    also: Mapping[str, Constant] = field(default_factory=dict)
+    """Minima of other sizes that hold with it."""
 
 
 @dataclass(frozen=True)
@@ -113,7 +115,8 @@ def parse_table(raw: Mapping[str, Any]) -> LimitTable:
 
         def variant(entry: Mapping[str, Any], of: str) -> Variant:
             measured = entry.get("quantity", of)
-            return Variant(minimum(entry["minimum"], measured), measured, entry["when"], entry["say"])
+            also = {name: minimum(value, name) for name, value in entry.get("also", {}).items()}
+            return Variant(minimum(entry["minimum"], measured), measured, entry["when"], entry["say"], also)
 
         def row(entry: Mapping[str, Any]) -> Row:
             measured = entry.get("quantity", quantity)

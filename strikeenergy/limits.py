@@ -50,11 +50,15 @@ class _Possibility:
     base: bool
     says: tuple[str, ...]
     asks: tuple[str, ...]
+    also: tuple[tuple[float | None, float], ...] = ()
+    """Other sizes that have to hold as well: value and minimum."""
 
     @property
     def outcome(self) -> str:
-        if self.value is None:
+        if self.value is None or any(value is None for value, _ in self.also):
             return "not covered"
+        if any(not meets(value, least) for value, least in self.also if value is not None):
+            return "falls short"
         return "meets" if meets(self.value, self.limit.value) else "falls short"
 
 
@@ -116,7 +120,10 @@ def _judge(thing: StruckObject, table: LimitTable, check: Check, counts: bool) -
         row
         for row in check.rows
         if material in row.materials
-        and (not row.forms or form is None or form in row.forms)
+        and (
+            not row.forms
+            or (form in row.forms if form else set(row.forms) & set(thing.facet("forms") or row.forms))
+        )
         and (not row.uses or thing.use in row.uses)
     ]
     if not rows:
@@ -127,7 +134,7 @@ def _judge(thing: StruckObject, table: LimitTable, check: Check, counts: bool) -
             check.name, table.full_clause, table.standard, f"the table has no row for {of}{hint}", counts
         )
     possible = [p for row in rows for p in _possibilities(row, thing, form)]
-    verdict = _combine(possible, table, check, counts)
+    verdict = _combine(thing, possible, table, check, counts)
     if verdict.outcome == "meets" and _holds(check.not_covered_when, thing):
         return _with(verdict, "not covered", check.not_covered)
     if applies is None and verdict.outcome == "falls short":
@@ -153,13 +160,17 @@ def _possibilities(row: Row, thing: StruckObject, form: str | None) -> Iterable[
         yield _Possibility(row.minimum, row.quantity, None, True, (row.only_when_say,), tuple(asks))
         return
     says = tuple(text for text in (row.say, row.only_when_say) if text)
+    if only is None:
+        yield _Possibility(row.minimum, row.quantity, None, True, says, (*asks, *row.only_when))
     states = [_holds(variant.when, thing) for variant in row.variants]
     for answer in itertools.product(*((True, False) if state is None else (state,) for state in states)):
         limit, quantity, base, said = row.minimum, row.quantity, True, says
+        also: dict[str, Constant] = {}
         asked = list(asks)
         for variant, state, holds in zip(row.variants, states, answer, strict=True):
             if holds:
-                limit, quantity, base, said = variant.minimum, variant.quantity, False, (*says, variant.say)
+                limit, quantity, base = variant.minimum, variant.quantity, False
+                said, also = (*says, variant.say), dict(variant.also)
             if state is None:
                 asked += [
                     f"{name} (now not said)"
@@ -169,7 +180,13 @@ def _possibilities(row: Row, thing: StruckObject, form: str | None) -> Iterable[
         if only is None:
             asked.append(", ".join(row.only_when))
         size = thing.sizes().get(quantity)
-        yield _Possibility(limit, quantity, None if size is None else float(size), base, said, tuple(asked))
+        others = tuple(
+            (None if (found := thing.sizes().get(name)) is None else float(found), least.value)
+            for name, least in also.items()
+        )
+        yield _Possibility(
+            limit, quantity, None if size is None else float(size), base, said, tuple(asked), others
+        )
 
 
 def _holds(when: Mapping[str, Any], thing: StruckObject) -> bool | None:
@@ -194,7 +211,9 @@ def _holds(when: Mapping[str, Any], thing: StruckObject) -> bool | None:
     return None if None in states else True
 
 
-def _combine(possible: list[_Possibility], table: LimitTable, check: Check, counts: bool) -> Verdict:
+def _combine(
+    thing: StruckObject, possible: list[_Possibility], table: LimitTable, check: Check, counts: bool
+) -> Verdict:
     outcomes = {p.outcome for p in possible}
     if len(outcomes) > 1 and "not covered" in outcomes:
         outcomes = outcomes - {"not covered"} | {"conditional"}
@@ -217,11 +236,15 @@ def _combine(possible: list[_Possibility], table: LimitTable, check: Check, coun
         size = SIZE_UNITS[shown.quantity][1]
         lacks = f"give the {shown.quantity}: the limit is {format_quantity(shown.limit.value, shown.limit.unit, size)}"
         notes.append(next(iter(shown.says), lacks))
+    if shown.quantity == "section" and thing.facet("form") in ("solid tape", "pipe") and not shown.also:
+        notes.append("the section is checked, the thickness is not")
     notes += [text for text in (check.say, table.remark) if text]
     unit, show = SIZE_UNITS[shown.quantity]
     value, limit = shown.value, shown.limit.value
+    rows = {row.quantity for row in check.rows if row.quantity != shown.quantity}
+    renamed = not shown.base and shown.quantity in ("diameter", "section") and bool(rows)
     return Verdict(
-        check=check.name,
+        check=f"minimum {shown.quantity}" if renamed else check.name,
         sort="size",
         outcome=outcome,
         value=value,

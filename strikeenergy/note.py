@@ -248,7 +248,7 @@ def _print(node: ast.expr, show: Callable[[str], str]) -> tuple[str, int]:
 
 
 def _is_atom(text: str) -> bool:
-    return text.replace(".", "").replace("_", "").isalnum()
+    return text.replace(".", "").replace("_", "").isalnum() or text.startswith("∫")
 
 
 @dataclass(frozen=True)
@@ -259,6 +259,8 @@ class Given:
     unit: str | None = None
     meaning: str = ""
     standing: Standing | None = None
+    symbol: str = ""
+    """What it is called in this formula, where its name alone would mislead (∫i²dt in the place of i²)."""
 
 
 @dataclass(frozen=True)
@@ -274,6 +276,11 @@ class Step:
     show: str | None
     source: Source | None
     findings: tuple[str, ...]
+
+    def formula_text(self) -> str:
+        """Return the formula with symbols."""
+        own = {name: v.symbol for name, v in self.values.items() if isinstance(v, Given) and v.symbol}
+        return self.formula.substituted(own) if self.formula is not None else ""
 
     def substitution(self) -> str:
         """Return the formula with the SI values put in, as it was computed."""

@@ -6,7 +6,9 @@ failure with plugin, distribution and stage, and the others go on.
 
 from __future__ import annotations
 
+import contextlib
 import os
+import sys
 from collections.abc import Callable, Iterable, Mapping
 from dataclasses import dataclass, field
 from importlib.metadata import EntryPoint, entry_points
@@ -101,8 +103,8 @@ def kind_name(kind: type[StruckObject]) -> str:
 
 
 def short_reason(error: BaseException) -> str:
-    """Say what went wrong in one line: the class of the error and its first line."""
-    text = str(error).strip().split("\n")[0]
+    """Say what went wrong in one line: the class of the error and what it says."""
+    text = " ".join(str(error).split())[:300]
     return f"{type(error).__name__}: {text}" if text else type(error).__name__
 
 
@@ -116,9 +118,16 @@ def load(points: Iterable[EntryPoint] | None = None) -> Registry:
     registry = Registry()
     found = list(points if points is not None else entry_points(group=GROUP))
     wanted = os.environ.get("STRIKEENERGY_PLUGINS")
-    if wanted is not None:
-        names = {name.strip() for name in wanted.split(",")}
+    if wanted is not None and wanted.strip():
+        names = [name.strip() for name in wanted.split(",") if name.strip()]
+        known = {point.name for point in found}
         found = [point for point in found if point.name in names]
+        for name in names:
+            if name not in known and name != "none":
+                reason = (
+                    f"the variable STRIKEENERGY_PLUGINS names it; installed are {', '.join(sorted(known))}"
+                )
+                registry.failures.append(PluginError(name, "not installed", "import", reason))
     for point in sorted(found, key=lambda p: (p.name, p.value)):
         _load_one(registry, point)
     return registry
@@ -137,7 +146,8 @@ def _load_one(registry: Registry, point: EntryPoint) -> None:
         failed("register", f"the name {point.name!r} is taken by {clash.module} ({clash.distribution})")
         return
     try:
-        module = point.load()
+        with contextlib.redirect_stdout(sys.stderr):  # what a plugin prints must not mix with results
+            module = point.load()
     except KeyboardInterrupt:
         raise
     except BaseException as error:  # a plugin may even call sys.exit at import
@@ -183,7 +193,10 @@ def _check_module(module: ModuleType, name: str) -> None:
 
 def _call(manager: pluggy.PluginManager, hook: str) -> list[Any]:
     caller = getattr(manager.hook, hook)
-    results = caller()
+    with contextlib.redirect_stdout(sys.stderr):
+        results = caller()
+    if len(results) < len(caller.get_hookimpls()):
+        raise TypeError("it returned nothing; return a list, which may be empty")
     return [item for result in results for item in result]
 
 

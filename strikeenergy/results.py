@@ -3,13 +3,13 @@
 from __future__ import annotations
 
 import html
-from collections.abc import Iterable
+from collections.abc import Iterable, Iterator
 from dataclasses import dataclass, field
 from typing import Any
 
 import numpy as np
 
-from strikeenergy.errors import ExitCode, PluginError
+from strikeenergy.errors import ExitCode, PluginError, close_matches
 from strikeenergy.formatting import engineering, format_number, format_quantity, pretty
 from strikeenergy.inputs import StruckObject
 from strikeenergy.lightning.flash import Flash
@@ -157,6 +157,8 @@ class Verdict:
     standing: str
     sources: tuple[str, ...]
     show: str | None = None
+    rank: float | None = None
+    """The margin as a ratio of sizes, where the check is of something else: what margins are compared by."""
 
     def numbers(self) -> str:
         """The value against the limit, for people."""
@@ -198,6 +200,8 @@ class ObjectResult:
 
     def __getitem__(self, finding: str) -> Any:
         """Return a finding as a quantity."""
+        if finding not in self.findings:
+            raise KeyError(f"no finding {finding!r}; {close_matches(finding, self.findings)}")
         return self.findings[finding].quantity
 
     @property
@@ -215,7 +219,7 @@ class ObjectResult:
     def governing(self) -> Verdict | None:
         """The verdict that decides: of the worst outcome, the one with the least margin."""
         worst = [v for v in self.counting if v.outcome == self.outcome]
-        return min(worst, key=lambda v: v.margin if v.margin is not None else float("inf"), default=None)
+        return min(worst, key=_tightness, default=None)
 
     def to_dict(self) -> dict[str, Any]:
         """Return it for JSON, in SI."""
@@ -232,6 +236,12 @@ class ObjectResult:
 
     def __repr__(self) -> str:
         return f"<{self.name}: {self.outcome}{_by(self.governing)}>"
+
+
+def _tightness(verdict: Verdict) -> float:
+    """A margin in W/R goes with the square of the size: compare sizes with sizes."""
+    margin = verdict.rank if verdict.rank is not None else verdict.margin
+    return float("inf") if margin is None else margin
 
 
 def _by(governing: Verdict | None) -> str:
@@ -262,6 +272,8 @@ class Estimate:
     failures: list[PluginError]
     software: dict[str, Any]
     standard: str
+    skipped: tuple[str, ...] = ()
+    """Objects that are left out because the plugin of their kind failed to load."""
     ledger: Ledger | None = None
     """The energy that goes into each object beside that of the whole flash; None where no object takes any."""
     cautions: tuple[str, ...] = CAUTIONS
@@ -271,7 +283,13 @@ class Estimate:
         for result in self.objects:
             if result.name == name:
                 return result
-        raise KeyError(name)
+        raise KeyError(f"no object {name!r}; {close_matches(name, [r.name for r in self.objects])}")
+
+    def __iter__(self) -> Iterator[ObjectResult]:
+        return iter(self.objects)
+
+    def __len__(self) -> int:
+        return len(self.objects)
 
     @property
     def all_failures(self) -> list[PluginError]:
@@ -308,6 +326,7 @@ class Estimate:
             "flash": self.flash.to_dict(),
             "objects": [result.to_dict() for result in self.objects],
             "failures": [failure_dict(failure) for failure in self.failures],
+            "skipped": list(self.skipped),
             "ledger": self.ledger.to_dict() if self.ledger else None,
             "cautions": list(self.cautions),
             "software": self.software,

@@ -28,6 +28,7 @@ else:
 
 __all__ = [
     "Quantity",
+    "awg_number",
     "awg_section",
     "convert",
     "dimension_name",
@@ -152,6 +153,8 @@ def _canonical(text: str) -> str:
         else:
             out.append({"times": "*", "over": "/", "open": "(", "close": ")"}[sort])
         last = sort
+    if "%" in rest and rest != "%":
+        raise ValueError("'%' stands alone")
     if last in ("start", "times", "over", "open"):
         raise ValueError("it ends too early" if out else "the unit is missing")
     return "".join(out)
@@ -184,8 +187,9 @@ def scale(unit: str) -> Scale:
             if spelt != "kcmil":
                 raise ValueError("write the size before it, such as '6 AWG'")
             return Scale(_KCMIL, 0.0, scale("m**2").dimension)
-        if spelt in _OFFSET_UNITS:
-            return _OFFSET_UNITS[spelt]
+        offset = _offset_unit(spelt)
+        if offset is not None:
+            return offset
         # Within a compound, such as J/(kg*degC), only a difference can be meant.
         parsed = registry().parse_units(
             re.sub(r"(?:°|degree_|deg)(C|F)(?:elsius|ahrenheit)?\b", r"delta_deg\1", spelt)
@@ -198,6 +202,22 @@ def scale(unit: str) -> Scale:
         hint = close_matches(unit, _COMMON_UNITS)
         raise QuantityError(f"{unit!r} is not a unit: {reason}", hint if "mean" in hint else "") from None
     return Scale(factor, 0.0, dimension)
+
+
+def _offset_unit(spelt: str) -> Scale | None:
+    """Return the scale of a lone temperature unit with an offset; None where no offset unit is in it.
+
+    Raises:
+        ValueError: an offset unit that is neither Celsius nor Fahrenheit, or one with a prefix or in brackets.
+    """
+    parsed = registry().parse_units(spelt)
+    if registry().Quantity(1.0, parsed)._is_multiplicative or len(dict(parsed._units)) > 1:
+        return None
+    (name,) = dict(parsed._units)
+    found = _OFFSET_UNITS.get(name) if spelt.isidentifier() or "°" in spelt else None
+    if found is None:
+        raise ValueError("write degC or degF for a temperature")
+    return found
 
 
 _KCMIL = 1000 * math.pi / 4 * (25.4e-6) ** 2
@@ -330,6 +350,8 @@ def read(value: Any, unit: str, *, example: str = "", wire: bool = False) -> Qua
     if hasattr(value, "magnitude") and hasattr(value, "units"):
         return _read_quantity(value, unit, example)
     if scale(unit).dimension == "dimensionless" and isinstance(value, (int, float)):
+        if isinstance(value, int) and abs(value) > 10**300:
+            raise QuantityError("the number is too large", f"write {example!r}")
         return _finite(float(value), str(value), example)
     if scale(unit).dimension == "dimensionless" and hasattr(value, "dtype"):
         return _finite_array(value, example)
@@ -338,9 +360,12 @@ def read(value: Any, unit: str, *, example: str = "", wire: bool = False) -> Qua
             f"{value} has no unit", f"write {_with_unit(value, unit)!r} if that is what is meant"
         )
     raise QuantityError(
-        f"{type(value).__name__} found where {dimension_name(unit)} is due",
+        f"{_SORTS.get(type(value).__name__, type(value).__name__)} found where {dimension_name(unit)} is due",
         f"write a text such as {example!r}",
     )
+
+
+_SORTS = {"list": "a list", "tuple": "a list", "dict": "a table", "NoneType": "nothing"}
 
 
 def _with_unit(value: float, unit: str) -> str:
@@ -356,6 +381,10 @@ def _read_text(text: str, unit: str, example: str, wire: bool) -> float:
         )
     if not stripped:
         raise QuantityError("the text is empty", f"write {example!r}")
+    if any(ord(c) < 32 for c in stripped):
+        raise QuantityError(
+            f"{shown!r} holds a control character", f"write it in one line, such as {example!r}"
+        )
     if wire:
         size = re.fullmatch(r"(?:AWG\s*)?([0-9]{1,2}(?:/0)?|0{2,4})\s*(?:AWG)?", stripped, re.IGNORECASE)
         if size and "awg" in stripped.casefold():
@@ -456,8 +485,8 @@ def _finite_array(values: Any, example: str) -> Quantity:
     return array
 
 
-def awg_section(size: str | int) -> float:
-    """Section in m² of a solid wire of American wire gauge (ASTM B258: diameter 0.005 in x 92^((36-n)/39)).
+def awg_number(size: str | int) -> int:
+    """Gauge number n of an American wire gauge: 1/0 is 0, 2/0 is -1, 3/0 is -2, 4/0 is -3.
 
     Raises:
         QuantityError: the size is not between 4/0 and 40.
@@ -465,14 +494,21 @@ def awg_section(size: str | int) -> float:
     text = str(size).strip()
     known = {"0000": -3, "000": -2, "00": -1, "4/0": -3, "3/0": -2, "2/0": -1, "1/0": 0}
     if text in known:
-        number = known[text]
-    elif text.isascii() and text.isdigit() and int(text) <= 40 and len(text) <= 2:
-        number = int(text)
-    else:
-        raise QuantityError(
-            f"{size!r} is not an AWG size", "write a number from 0 to 40, or '1/0', '2/0', '3/0', '4/0'"
-        )
-    diameter: float = 0.127e-3 * 92.0 ** ((36 - number) / 39)
+        return known[text]
+    if text.isascii() and text.isdigit() and len(text) <= 2 and int(text) <= 40:
+        return int(text)
+    raise QuantityError(
+        f"{size!r} is not an AWG size", "write a number from 0 to 40, or '1/0', '2/0', '3/0', '4/0'"
+    )
+
+
+def awg_section(size: str | int) -> float:
+    """Section in m² of a solid wire of American wire gauge (ASTM B258: diameter 0.005 in x 92^((36-n)/39)).
+
+    Raises:
+        QuantityError: the size is not between 4/0 and 40.
+    """
+    diameter: float = 0.127e-3 * 92.0 ** ((36 - awg_number(size)) / 39)
     return math.pi / 4 * diameter**2
 
 

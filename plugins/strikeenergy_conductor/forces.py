@@ -86,6 +86,18 @@ def forces(conductor: Conductor, flash: Flash, note: Note) -> Forces:
             note.remark(
                 "conductor and neighbour together are given more than the whole flash current: an upper bound"
             )
+    if any(other.length is None for other in conductor.neighbour):
+        for name in ("neighbour_force", "neighbour_force_impulse"):
+            note.unknown(name, "give every neighbour a length")
+    if conductor.neighbour and conductor.facet("form") == "solid tape":
+        note.remark(
+            "tapes are taken as line currents: for tapes face to face at small spacing the force is less"
+        )
+    radius = conductor.radius
+    if radius is not None and any(np.any(np.asarray(o.spacing) < 2 * radius) for o in conductor.neighbour):
+        note.remark(
+            "a neighbour is nearer than one diameter: the currents crowd together or apart, which is left out"
+        )
     senses = {other.direction for other in conductor.neighbour}
     return Forces(
         pinch_pressure=pinch,
@@ -190,6 +202,7 @@ def _neighbour(
             out += [None, None]
             continue
         squared = value**2 if quantity == "peak" else value
+        symbol = "i²" if quantity == "peak" else "∫i²dt"
         meaning = (
             "peak current of the flash squared" if quantity == "peak" else "specific energy of the flash"
         )
@@ -200,9 +213,11 @@ def _neighbour(
             meaning=f"product of the currents, neighbour {number}",
             k1=shares[0],
             k2=shares[1],
-            i2=Given(squared, unit, meaning),
+            i2=Given(squared, unit, meaning, symbol=symbol),
         )
-        i2 = Given(product, unit, "product of the currents")
+        i2 = Given(
+            product, unit, "product of the currents", symbol="i1·i2" if quantity == "peak" else "∫i1·i2·dt"
+        )
         name = "force_per_length" if made == "force" else "force_impulse_per_length"
         infinite = note.formula(
             "F'" if made == "force" else "J'",
@@ -230,17 +245,15 @@ def _neighbour(
             l=length,
         )
         out += [finite / other.length, finite]
-    if other.length is None:
-        note.unknown("neighbour_force", "give the neighbour a length")
-        note.unknown("neighbour_force_impulse", "give the neighbour a length")
-    else:
+    if other.length is not None:
         note.remark("the force per length is the mean over the finite length given")
     return out[0], out[2], out[1], out[3]
 
 
 def _total(side: list[tuple[Any, Any, Any, Any]], index: int) -> Any:
-    values = [entry[index] for entry in side if entry[index] is not None]
-    return sum(values[1:], values[0]) if values else None
+    """Add the neighbours up; None where one of them is not known, so that no part passes for the whole."""
+    values = [entry[index] for entry in side]
+    return sum(values[1:], values[0]) if values and all(value is not None for value in values) else None
 
 
 def _bend(conductor: Conductor, note: Note, peak: Given | None, energy: Given | None) -> tuple[Value, Value]:
@@ -273,7 +286,12 @@ def _bend(conductor: Conductor, note: Note, peak: Given | None, energy: Given | 
         if given is None:
             out.append(None)
             continue
-        i2 = Given(given.value**2 if unit == "N" else given.value, squared, given.meaning)
+        i2 = Given(
+            given.value**2 if unit == "N" else given.value,
+            squared,
+            given.meaning,
+            symbol="i²" if unit == "N" else "∫i²dt",
+        )
         legs: dict[str, Any] = {
             "l": Given(conductor.bend.leg, "m", "the other leg"),
             "x2": Given(conductor.bend.span, "m", "span"),

@@ -30,6 +30,7 @@ ANNEX_D = source("iec62305-1:2010", "Annex D.4")
 DERIVED = source("iec62305-1:2010", "follows from Annex D.4")
 STATES = ("solid", "melting", "molten")
 
+_COLDEST = 223.15
 _ROUNDING = 1e-12
 """A conductor at exactly the onset of melting has not begun to melt; this much is rounding."""
 
@@ -183,8 +184,8 @@ def _specific_energy(conductor: Conductor, flash: Flash, note: Note) -> Given:
         w = flash.specific_energy
     if len(flash.strokes) > 1 and not flash.totals:
         note.remark(f"{len(flash.strokes)} strokes heat one after another, without cooling between them")
-        if any(s.specific_energy is None for s in flash.strokes):
-            note.remark("a long stroke without W/R counts as a rectangle, Q²/T, the least it can be")
+    if not flash.totals and any(s.value("specific_energy") is None for s in flash.strokes):
+        note.remark("a long stroke without W/R counts as a rectangle, Q²/T, the least it can be")
     return Given(w, "J/ohm", "specific energy W/R", flash.standing)
 
 
@@ -203,6 +204,10 @@ def _at_start(conductor: Conductor, metal: Material, note: Note) -> tuple[Any, A
         "T": Given(conductor.start, "K", "temperature before the stroke"),
         "T_r": reference,
     }
+    if np.any(1 + alpha.value * (np.asarray(conductor.start) - reference.value) <= 0):
+        raise OutsideValidity("at this temperature the straight line of the resistivity has fallen to zero")
+    if np.any(np.asarray(conductor.start) < _COLDEST):
+        note.remark("the conductor is so cold that the straight line of the resistivity is doubtful")
     rho0: Any = rho
     alpha0: Any = alpha
     if np.any(np.asarray(conductor.start) != reference.value):

@@ -17,7 +17,7 @@ from strikeenergy.api import (
     Quantity,
     QuantityError,
     Unit,
-    awg_section,
+    awg_number,
 )
 
 Form = Literal["solid round", "solid tape", "stranded", "rod", "pipe"]
@@ -30,7 +30,6 @@ _SIZES = (
     ("awg",),
     ("kcmil",),
 )
-_KCMIL = 1000 * math.pi / 4 * (25.4e-6) ** 2
 
 
 class Neighbour(Part):
@@ -133,7 +132,7 @@ class Conductor(OfMaterial):
         """Hold the sizes against one another and the form."""
         if self.awg is not None:
             try:
-                awg_section(self.awg)
+                awg_number(self.awg)
             except QuantityError as error:
                 yield Problem(error.what, error.write, ("awg",))
                 return
@@ -147,9 +146,11 @@ class Conductor(OfMaterial):
             )
             return
         fits = {
-            "diameter": ("solid round", "stranded", "rod"),
+            "diameter": ("solid round", "rod"),
             "width": ("solid tape",),
             "outer_diameter": ("pipe",),
+            "awg": ("solid round", "stranded"),
+            "kcmil": ("solid round", "stranded"),
         }
         for name, forms in fits.items():
             if getattr(self, name) is not None and self.form is not None and self.form not in forms:
@@ -193,10 +194,19 @@ class Conductor(OfMaterial):
             d, t = Given(self.outer_diameter, "m", "outer diameter"), Given(self.wall, "m", "wall thickness")
             area = note.formula("q", "pi*t*(d - t)", "m**2", meaning=meaning, show="mm**2", d=d, t=t)
         elif self.awg is not None:
-            area = awg_section(self.awg)
+            n = Given(awg_number(self.awg), None, "gauge number (ASTM B258; 1/0 is 0, 2/0 is -1, ...)")
+            d = Given(
+                note.formula(
+                    "d", "0.127e-3*92**((36 - n)/39)", "m", meaning="diameter of the gauge", show="mm", n=n
+                ),
+                "m",
+            )
+            area = note.formula("q", "pi/4*d**2", "m**2", meaning=meaning, show="mm**2", d=d)
         else:
-            assert self.kcmil is not None
-            area = self.kcmil * _KCMIL
+            size = Given(self.kcmil, None, "thousands of circular mils")
+            area = note.formula(
+                "q", "kcmil*1000*pi/4*25.4e-6**2", "m**2", meaning=meaning, show="mm**2", kcmil=size
+            )
         return area
 
     @property
@@ -206,7 +216,7 @@ class Conductor(OfMaterial):
             return self.outer_diameter / 2
         if self.diameter is not None:
             return self.diameter / 2
-        if self.facet("form") == "solid tape":
+        if self.facet("form") in ("solid tape", "pipe"):
             return None
         return np.sqrt(np.asarray(self.area) / math.pi)
 
@@ -224,13 +234,30 @@ class Conductor(OfMaterial):
         return found
 
     def facet(self, name: str) -> Any:
-        """Return what tables select by; the form follows from how the size is given where it is not said."""
-        if name != "form" or self.form is not None:
+        """Return what tables select by: the form follows from the use, or from how the size is given.
+
+        ``forms`` are those that are possible where the form is not known.
+        """
+        if name == "forms":
+            return self._possible_forms()
+        if name != "form":
             return super().facet(name)
-        if self.width is not None:
-            return "solid tape"
-        if self.outer_diameter is not None:
-            return "pipe"
-        if self.use in ("air-termination rod", "earth lead-in rod"):
+        if self.use in ("air-termination rod", "earth lead-in rod") and self.form in (None, "solid round"):
             return "rod"
-        return None
+        if self.use == "down conductor" and self.form == "rod":
+            return "solid round"
+        if self.form is not None:
+            return self.form
+        possible = self._possible_forms()
+        return possible[0] if len(possible) == 1 else None
+
+    def _possible_forms(self) -> tuple[str, ...]:
+        if self.width is not None:
+            return ("solid tape",)
+        if self.outer_diameter is not None:
+            return ("pipe",)
+        if self.diameter is not None:
+            return ("solid round", "rod") if self.use in (None, "earth electrode") else ("solid round",)
+        if self.awg is not None or self.kcmil is not None:
+            return ("solid round", "stranded")
+        return ("solid round", "solid tape", "stranded", "rod", "pipe")

@@ -100,7 +100,9 @@ class Channel(Findings):
 def channel(tree: Tree, flash: Flash, note: Note) -> Channel:
     """Flashover, path, channel energy and damage class of a struck trunk; the field inside is capped."""
     stem = layers(tree, note)
-    note.remark("channel energies, also that in the energy ledger, hold only if the arc runs inside the trunk")
+    note.remark(
+        "channel energies, also that in the energy ledger, hold only if the arc runs inside the trunk"
+    )
     note.remark(
         "not a safety clearance: do not approach the tree before it is declared safe; it may hide cracks, hanging limbs "
         "and embers, also without a visible mark"

@@ -49,6 +49,10 @@ def estimate_text(estimate: Estimate) -> str:
     if estimate.ledger is not None:
         lines += ["", *estimate.ledger.lines()]
     lines += ["", *_left_out(estimate)]
+    if estimate.skipped:
+        lines += ["", "LEFT OUT"]
+        for text in estimate.skipped:
+            lines += wrap(text, "    ", "  ! ")
     if estimate.failures:
         lines += ["", "FAILED PLUGINS"]
         for failure in estimate.failures:
@@ -129,7 +133,7 @@ def _left_out(estimate: Estimate) -> list[str]:
 
 def margin_text(margin: float) -> str:
     """Write a margin so that 1 stands out: 1.00, 0.45, 20.4."""
-    return f"{margin:.2f}" if margin < 10 else format_number(margin, 3)
+    return f"{margin:.2f}" if margin < 10 else format_number(margin, 4)
 
 
 def _verdict_lines(verdict: Verdict, governing: Verdict | None, brief: bool = False) -> list[str]:
@@ -175,7 +179,7 @@ def _note_lines(note: Note) -> Iterable[str]:
     for number, step in enumerate(note.steps, 1):
         yield from wrap(f"{step.meaning or step.symbol}", "    ", f"{number:>2}. ")
         if step.formula is not None:
-            yield from wrap(f"{step.symbol} = {step.formula.text()}", "          ", "      ")
+            yield from wrap(f"{step.symbol} = {step.formula_text()}", "          ", "      ")
             yield from wrap(f"{' ' * len(step.symbol)} = {step.substitution()}", "          ", "      ")
         yield from wrap(f"{' ' * len(step.symbol)} = {step.result_text()}", "          ", "      ")
         if step.source is not None:
@@ -211,6 +215,6 @@ def _constant_lines(symbol: str, value: Constant) -> Iterable[str]:
     )
     named = f"{symbol} = " if symbol else ""
     yield from wrap(
-        f"{named}{format_quantity(value.value, value.unit, shown)}, {value.meaning}", "      ", "  "
+        f"{named}{format_quantity(value.value, value.unit, shown, 6)}, {value.meaning}", "      ", "  "
     )
     yield from wrap(f"{value.source}; {value.standing}", "      ", "    ")

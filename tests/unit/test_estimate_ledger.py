@@ -1,8 +1,8 @@
 """The ledger of an estimate: what the effects declare as energy, beside the published range of a flash."""
 
 import pytest
-from helpers import ROOT
 
+from helpers import ROOT
 from strikeenergy import estimate, load_case, make_case
 from strikeenergy.case import CaseError
 from strikeenergy.report.text import estimate_text

@@ -29,6 +29,8 @@ RIGHT = [
     ("20 degC", "degC", 293.15),
     ("293.15 K", "degC", 293.15),
     ("20 K", "K", 20.0),
+    ("2 celsius", "degC", 275.15),
+    ("20 degreeC", "degC", 293.15),
     ("200 KA", "A", 2e5),
     ("5 µm", "m", 5e-6),
     ("5 μm", "m", 5e-6),
@@ -100,6 +102,13 @@ REFUSED = [
     ("5 m m", "m", "a length"),
     ("5 m;", "m", "cannot stand"),
     ("5 (m", "m", ""),
+    ("20 reaumur", "degC", ""),
+    ("20 (degC)", "degC", "degC"),
+    ("20 mdegC", "degC", "degC"),
+    ("0.02 kdegC", "degC", "degC"),
+    ("50 % mm**2", "mm**2", "stands alone"),
+    ("50\nmm**2", "mm**2", "control character"),
+    (10**400, "", "too large"),
     ("5 m)", "m", ""),
 ]
 
