@@ -169,6 +169,6 @@ def close_matches(name: str, known: Iterable[str]) -> str:
     near = [folded[m] for m in get_close_matches(name.casefold(), list(folded), n=3, cutoff=0.6)]
     if near:
         return "did you mean " + " or ".join(repr(n) for n in near) + "?"
-    if names and len(names) <= 12:
+    if names and len(names) <= 24:
         return "known: " + ", ".join(repr(n) for n in names)
     return f"{len(names)} names are known; 'strikeenergy describe' lists them" if names else ""

@@ -139,7 +139,8 @@ class Unit:
             return np.zeros(array.shape, dtype=bool)
         found = scale(self.unit)
         low, high = (found.to_si(end) for end in self.typical)
-        return np.asarray((array > high * _FAR) | ((array < low / _FAR) & (array > 0)))
+        least = low / _FAR if self.gt == 0 else 0.0
+        return np.asarray((array > high * _FAR) | ((array < least) & (array > 0)))
 
     def __get_pydantic_core_schema__(self, source: Any, handler: GetCoreSchemaHandler) -> CoreSchema:
         return core_schema.no_info_plain_validator_function(_as_custom_error(self.read))

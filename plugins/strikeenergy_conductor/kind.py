@@ -154,11 +154,10 @@ class Conductor(OfMaterial):
         }
         for name, forms in fits.items():
             if getattr(self, name) is not None and self.form is not None and self.form not in forms:
-                yield Problem(
-                    f"{name} does not go with form {self.form!r}",
-                    f"write one of {', '.join(forms)}",
-                    ("form",),
-                )
+                hint = f"write one of {', '.join(forms)}"
+                if name == "diameter" and self.form == "stranded":
+                    hint = "give the metal section: a strand bundle holds less metal than its diameter"
+                yield Problem(f"{name} does not go with form {self.form!r}", hint, ("form",))
                 return
         radius = self.radius
         for number, other in enumerate(self.neighbour):

@@ -128,6 +128,7 @@ def channel(tree: Tree, flash: Flash, note: Note) -> Channel:
     energies = _energies(tree, strokes, arcs, deep_first, note)
     speed = _speed(tree, parts, energies, note)
     probabilities = class_probabilities(tree, strokes, arcs, parts, under.value, deep.value, note)
+    _say_ties(probabilities, note)
     return Channel(
         current, stem.resistance, before, surface, under, deep, energies, _most_probable(probabilities), *probabilities, speed
     )  # fmt: skip
@@ -268,6 +269,16 @@ def _most_probable(probabilities: tuple[Any, ...]) -> Value:
     stacked = np.stack(np.broadcast_arrays(*probabilities))[::-1]
     codes = (len(trunk.CLASSES) - 1 - np.argmax(stacked.round(12), axis=0)).astype(np.int8)
     return Words(codes, trunk.CLASSES) if codes.ndim else trunk.CLASSES[int(codes)]
+
+
+def _say_ties(probabilities: tuple[Any, ...], note: Note) -> None:
+    """Say where two classes are equally probable: the one named is then the more severe."""
+    if any(np.ndim(p) for p in probabilities):
+        return
+    values = [round(float(p), 12) for p in probabilities]
+    top = [name for name, value in zip(trunk.CLASSES, values, strict=True) if value == max(values)]
+    if len(top) > 1:
+        note.remark(f"{' and '.join(top)} are equally probable; the more severe is named")
 
 
 def _say_missing(tree: Tree, strokes: Confined, arcs: Any, note: Note) -> None:

@@ -49,12 +49,17 @@ def confined(flash: Flash, longest: float, note: Note) -> Confined:
                 "continuing current flows after the bark has opened: it is not counted as confined energy"
             )
             continue
-        if stroke.duration is None and (stroke.peak is None or stroke.charge is None):
+        if stroke.duration is None and (stroke.value("peak") is None or stroke.value("charge") is None):
             note.remark("a stroke whose duration does not follow from the values given counts as an impulse")
         called = f"stroke {number}" + (f" ({stroke.name})" if stroke.name else "")
         for value, into, what, write in (
-            (stroke.charge, charges, "charge", "charge = '5 C'"),
-            (stroke.specific_energy, energies, "specific energy W/R", "specific_energy = '50 kJ/ohm'"),
+            (stroke.value("charge"), charges, "charge", "charge = '5 C'"),
+            (
+                stroke.value("specific_energy"),
+                energies,
+                "specific energy W/R",
+                "specific_energy = '50 kJ/ohm'",
+            ),
         ):
             if value is None:
                 missing.append(f"{called} has no {what}; give it: {write}")
@@ -63,16 +68,17 @@ def confined(flash: Flash, longest: float, note: Note) -> Confined:
     if len(charges) > 1:
         note.remark("later impulses find the furrow open and burn as free arcs: the impulse that gives most energy counts, not the sum")  # fmt: skip
     if not charges and not energies and not missing:
-        # An array of flashes stays one, also where nothing of it counts.
         known = [
-            value
-            for stroke in flash.strokes
-            for value in (stroke.charge, stroke.duration)
-            if value is not None
+            v for stroke in flash.strokes for v in (stroke.value("charge"), stroke.duration) if v is not None
         ]
         zero = sum(0.0 * value for value in known)
-        charges, energies = [zero], [zero]
-        note.remark("the flash has no impulse: nothing is confined")
+        if np.ndim(zero):
+            # An array of flashes stays one: where no flash of it has an impulse, nothing is confined.
+            charges, energies = [zero], [zero]
+        else:
+            missing.append(
+                "the flash has no impulse, and what continuing current alone does is not in this model"
+            )
     return Confined(charges, energies, missing)
 
 
@@ -80,8 +86,9 @@ def _lasts(stroke: Stroke, longest: float) -> Any:
     """Return whether it is continuing current: by its duration, or because its peak cannot bring its charge sooner."""
     if stroke.duration is not None:
         return np.asarray(stroke.duration) > longest
-    if stroke.charge is not None and stroke.peak is not None:
-        return np.asarray(stroke.charge) > longest * np.asarray(stroke.peak)
+    charge, peak = stroke.value("charge"), stroke.value("peak")
+    if charge is not None and peak is not None:
+        return np.asarray(charge) > longest * np.asarray(peak)
     return np.asarray(False)
 
 
