@@ -214,7 +214,14 @@ class Materials:
         """
         if name in self.own:
             own = self.own[name]
-            return Material(name, "own material of the case", name, own)
+            unused = f"the constants of {name} are the case's own; the set {constants!r} is not used"
+            return Material(
+                name,
+                "own material of the case",
+                name,
+                own,
+                remarks=() if constants == DEFAULT_SET else (unused,),
+            )
         if constants not in sets():
             raise UnknownName("constant set", constants, sets())
         chosen = sets()[constants]

@@ -239,6 +239,30 @@ class Population:
             found.append(Rarity(name, float(value), QUANTITIES[name][0], MappingProxyType(shown), rank))
         return tuple(found)
 
+    def draw(self, quantity: str, n: int, seed: int, component: str = "all") -> Array:
+        """Draw one quantity by itself: intervals between strokes, flash durations, times, steepnesses.
+
+        Independent of every other quantity, and of :meth:`sample`: to draw peak, charge and W/R so would give
+        flashes that no current has.
+
+        Args:
+            quantity: one of :data:`QUANTITIES`.
+            n: how many.
+            seed: the same seed gives the same values.
+            component: see :meth:`law`.
+
+        Returns:
+            Values in SI, of shape (n,).
+
+        Raises:
+            UnknownName: no such quantity or component.
+            InputError: no law of it; ``n`` or the seed is no whole number.
+        """
+        _check_draw(n, seed)
+        # The generator may give 0, where the laws end; it never gives 1.
+        u = np.maximum(np.random.default_rng(seed).random(n), 2.0**-54)
+        return self.quantile(quantity, u, component)
+
     def sample(self, n: int, seed: int) -> Sample:
         """Draw random flashes that a current can be.
 
@@ -249,13 +273,7 @@ class Population:
         Raises:
             InputError: ``n`` is not a whole number from 1 up, or the seed not one from 0 up.
         """
-        problems = [
-            Problem(f"{what} is {value!r}", f"write a whole number from {least} up")
-            for what, value, least in (("the number of flashes", n, 1), ("the seed", seed, 0))
-            if isinstance(value, bool) or not isinstance(value, (int, np.integer)) or value < least
-        ]
-        if problems:
-            raise InputError(problems)
+        _check_draw(n, seed)
         rng = np.random.default_rng(seed)
         polarity = np.empty(n, dtype=np.int8)
         out: dict[str, NDArray[Any]] = {
@@ -354,6 +372,16 @@ class Population:
             (f"long continuing current: {text} (highly unlikely)", cc.peak.standing, cc.peak.source),
             *self.remarks,
         ]
+
+
+def _check_draw(n: int, seed: int) -> None:
+    problems = [
+        Problem(f"{what} is {value!r}", f"write a whole number from {least} up")
+        for what, value, least in (("the number of values", n, 1), ("the seed", seed, 0))
+        if isinstance(value, bool) or not isinstance(value, (int, np.integer)) or value < least
+    ]
+    if problems:
+        raise InputError(problems)
 
 
 def _spell(law: Marginal, shown: str) -> str:

@@ -1,6 +1,5 @@
 """One million strokes through `heating` in one call, against the bare numpy formula on the same arrays."""
 
-import statistics
 import time
 
 import numpy as np
@@ -21,7 +20,7 @@ def cost(work):
 
 @pytest.mark.benchmark
 def test_a_million_strokes(capsys):
-    """Target: at most 1.5 times the bare formula. The ratio is the median of paired runs in one process."""
+    """Target: at most 1.5 times the bare formula. Both are measured in turn in one process, and the least of each counts."""
     w = np.random.default_rng(1).uniform(1e5, 1e7, COUNT)
     copper = Conductor(material="copper", section="16 mm**2")
     flash = Flash((Stroke(specific_energy=w),))
@@ -31,11 +30,9 @@ def test_a_million_strokes(capsys):
         return (np.exp(w * alpha * rho / (q**2 * c)) - 1) / alpha
 
     np.testing.assert_allclose(heating(copper, flash).temperature_rise, bare(), rtol=1e-9)
-    pairs = []
-    for _ in range(15):
-        ours, theirs = cost(lambda: heating(copper, flash)), cost(bare)
-        pairs.append(ours / theirs)
-    ratio = statistics.median(pairs)
+    pairs = [(cost(lambda: heating(copper, flash)), cost(bare)) for _ in range(25)]
+    # The least of each: what disturbs a shared machine only ever adds.
+    ratio = min(ours for ours, _ in pairs) / min(theirs for _, theirs in pairs)
     with capsys.disabled():
         print(f"\nheating of {COUNT} strokes: {ratio:.2f} times the bare numpy formula (target {TARGET})")
     assert ratio <= TARGET

@@ -83,6 +83,11 @@ def test_own_material():
     assert own["resistivity"].value == pytest.approx(30e-9)
     assert own["temperature_coefficient"].value == pytest.approx(1 / 250)
     assert own["reference_temperature"].standing is Standing.ASSUMED
+    known = Materials(own={"x": own})
+    assert known.get("x").remarks == ()
+    assert known.get("x", "IEC 60949").remarks == (
+        "the constants of x are the case's own; the set 'IEC 60949' is not used",
+    )
 
 
 def test_properties_have_units():

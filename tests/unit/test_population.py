@@ -486,3 +486,22 @@ def test_importing_does_not_load_scipy():
         subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=True).stdout
         == "False\n"
     )
+
+
+def test_draw_gives_one_quantity_alone_by_its_published_law() -> None:
+    # IEC 62305-1 Table A.1: intervals between negative strokes 7, 33 and 150 ms (95, 50 and 5 %).
+    intervals = population().draw("interval", 200_000, seed=5, component="subsequent")
+    assert intervals.shape == (200_000,)
+    assert np.median(intervals) == pytest.approx(32.4e-3, rel=0.02)
+    assert np.mean(intervals > 7e-3) == pytest.approx(0.95, abs=0.005)
+    assert np.mean(intervals > 150e-3) == pytest.approx(0.05, abs=0.005)
+    assert np.array_equal(intervals, population().draw("interval", 200_000, seed=5, component="subsequent"))
+    peaks = population().draw("peak", 1000, seed=1)
+    assert np.all(np.isfinite(peaks))
+    assert np.all(peaks > 0)
+
+
+@pytest.mark.parametrize(("n", "seed"), [(0, 1), (2.5, 1), (True, 1), (5, -1)])
+def test_draw_refuses_what_is_no_whole_number(n: object, seed: object) -> None:
+    with pytest.raises(InputError, match="whole number"):
+        population().draw("peak", n, seed)  # type: ignore[arg-type]
