@@ -114,6 +114,8 @@ def syntax_problem(text: str, name: str, error: tomllib.TOMLDecodeError) -> Prob
     unquoted = re.match(r"\s*([\w-]+)\s*=\s*([-+]?[0-9][0-9.,eE+]*\s*[^\s0-9#\"'][^#]*?)\s*(#.*)?$", line)
     if unquoted:
         hint = f'quantities stand in quotes: write {unquoted[1]} = "{unquoted[2].strip()}"'
+    elif "overwrite a value" in what:
+        hint = f"{line.partition('=')[0].strip()} stands twice in one table: keep one of them"
     elif re.match(r"\s*[\w-]+\s*=\s*[A-Za-z]", line):
         key, _, value = line.partition("=")
         hint = f'text stands in quotes: write {key.strip()} = "{value.strip()}"'

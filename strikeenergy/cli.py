@@ -12,7 +12,7 @@ from typing import TYPE_CHECKING, Any
 
 import click
 
-from strikeenergy.errors import ExitCode, StrikeEnergyError
+from strikeenergy.errors import ExitCode, InputError, StrikeEnergyError
 from strikeenergy.version import __version__
 
 if TYPE_CHECKING:
@@ -150,10 +150,15 @@ def estimate(
     """
     from strikeenergy import case as cases
     from strikeenergy import engine
+    from strikeenergy.registry import load
 
     if notes and form == "csv":
         raise click.UsageError("--notes goes with --text or --json")
-    loaded = cases.load_case(case, threat=threat, standard=standard)
+    try:
+        loaded = cases.load_case(case, threat=threat, standard=standard)
+    except InputError:  # a plugin that failed may be the reason
+        _show_failures(load().failures)
+        raise
     if strict_plugins and loaded.registry.failures:
         raise loaded.registry.failures[0]
     result = engine.estimate(loaded)
@@ -233,6 +238,8 @@ def record(
     from strikeenergy.report.machine import to_json
     from strikeenergy.report.terminal import show
 
+    if not spec and (tolerance or peak):
+        raise click.UsageError("--tolerance and --peak go with --spec")
     source = sys.stdin.buffer if file == "-" else file
     given: dict[str, Any] = {name: value for name, value in options.items() if value is not None}
     read = reading.read_record(source, **given)

@@ -29,6 +29,8 @@ from strikeenergy.version import __version__
 
 __all__ = ["estimate", "run_effect", "run_object"]
 
+_OUTSIDE = "no model covers it"
+
 
 def estimate(case: Case) -> Estimate:
     """Compute what the flash of a case does to each of its objects, and compare with the published limits.
@@ -92,7 +94,7 @@ def run_object(thing: StruckObject, flash: Flash, registry: Registry, standard: 
         ):
             ran.append(effect)
             result.notes[effect.name] = note
-            result.remarks += [text for text in note.remarks if text not in result.remarks]
+        result.remarks += [text for text in note.remarks if text not in result.remarks]
     sizes: list[Verdict] = []
     try:
         sizes = size_verdicts(thing, result.kind, registry, standard)
@@ -105,7 +107,40 @@ def run_object(thing: StruckObject, flash: Flash, registry: Registry, standard: 
     for effect in ran:
         for criterion in effect.criteria:
             _guarded(result, effect, registry, lambda c=criterion: _compare(result, c, own, sizes))
+    if not (thing.is_array or flash.is_array):
+        _tell_what_is_not_judged(result, registry)
     return result
+
+
+def _tell_what_is_not_judged(result: ObjectResult, registry: Registry) -> None:
+    """Add a verdict for each criterion that could not be held: whoever reads verdicts alone must see it.
+
+    It counts where no model covers the object; where only an input or a constant is missing it does not.
+    """
+    judged = {verdict.check for verdict in result.verdicts if verdict.sort == "effect"}
+    for effect in registry.effects_of(type(result.thing)):
+        for criterion in effect.criteria:
+            if criterion.check in judged or any(effect.name in str(f) for f in result.failures):
+                continue
+            found = result.findings.get(criterion.limit) or result.findings.get(criterion.value)
+            told = next((r for r in result.remarks if r.startswith(f"{effect.name} is not computed")), "")
+            result.verdicts.append(
+                Verdict(
+                    check=criterion.check,
+                    sort="effect",
+                    outcome="not covered",
+                    value=None,
+                    limit=None,
+                    unit=criterion.unit,
+                    margin=None,
+                    clause=criterion.clause,
+                    standard=criterion.source.citation.split(",")[0],
+                    counts=_OUTSIDE in told,
+                    note=told or (found.why_not if found else "") or "not known",
+                    standing="",
+                    sources=(str(criterion.source),),
+                )
+            )
 
 
 def _compare(result: ObjectResult, criterion: Criterion, flash: Flash, sizes: list[Verdict]) -> None:
@@ -132,7 +167,7 @@ def _guarded(result: ObjectResult, effect: Effect, registry: Registry, run: Any)
     except MissingInput as error:
         result.remarks.append(f"{effect.name} is not computed: {error}")
     except OutsideValidity as error:
-        result.remarks.append(f"{effect.name} is not computed, no model covers it: {error}")
+        result.remarks.append(f"{effect.name} is not computed, {_OUTSIDE}: {error}")
     except KeyboardInterrupt:
         raise
     except BaseException as error:  # whatever a plugin does, even sys.exit, the others go on

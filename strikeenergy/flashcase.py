@@ -195,6 +195,11 @@ def _strokes(entries: tuple[StrokeEntry, ...], problems: list[Problem]) -> Flash
                 ("flash", "stroke"),
             )
         )
+    apart = [str(n) for n, s in enumerate(strokes, 1) if s.start is None and s.waveform is not None]
+    if apart and starts:
+        remarks.append(
+            f"no start is given of stroke {', '.join(apart)}: nothing of it overlaps the other strokes (give start = ...)"
+        )
     return Flash(tuple(strokes), remarks=tuple(remarks)) if strokes else None
 
 

@@ -99,7 +99,10 @@ def size_verdicts(thing: StruckObject, kind: str, registry: Registry, standard: 
         out.insert(
             0,
             _not_covered(
-                "minimum size", standard, standard, f"no table of {standard} covers the use {thing.use!r}"
+                "minimum size",
+                standard,
+                standard,
+                f"no table of {standard} that the program holds covers the use {thing.use!r}",
             ),
         )
     return sorted(out, key=lambda verdict: not verdict.counts)

@@ -214,13 +214,17 @@ class Materials:
         """
         if name in self.own:
             own = self.own[name]
+            replaces = f"the case's own {name} takes the place of the built-in one"
             unused = f"the constants of {name} are the case's own; the set {constants!r} is not used"
             return Material(
                 name,
                 "own material of the case",
                 name,
                 own,
-                remarks=() if constants == DEFAULT_SET else (unused,),
+                remarks=(
+                    *((replaces,) if name in material_names() else ()),
+                    *(() if constants == DEFAULT_SET else (unused,)),
+                ),
             )
         if constants not in sets():
             raise UnknownName("constant set", constants, sets())

@@ -128,9 +128,14 @@ def load(points: Iterable[EntryPoint] | None = None) -> Registry:
                     f"the variable STRIKEENERGY_PLUGINS names it; installed are {', '.join(sorted(known))}"
                 )
                 registry.failures.append(PluginError(name, "not installed", "import", reason))
-    for point in sorted(found, key=lambda p: (p.name, p.value)):
+    # The built-in ones first: a clash of names must not throw out a kind that every case counts on.
+    for point in sorted(found, key=lambda p: (not _is_own(p), p.name, p.value)):
         _load_one(registry, point)
     return registry
+
+
+def _is_own(point: EntryPoint) -> bool:
+    return point.dist is not None and point.dist.name == "strikeenergy"
 
 
 def _load_one(registry: Registry, point: EntryPoint) -> None:

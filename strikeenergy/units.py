@@ -356,6 +356,8 @@ def read(value: Any, unit: str, *, example: str = "", wire: bool = False) -> Qua
     if scale(unit).dimension == "dimensionless" and hasattr(value, "dtype"):
         return _finite_array(value, example)
     if isinstance(value, (int, float)):
+        if not -1e308 <= value <= 1e308:
+            raise QuantityError(f"{value} is not a finite number", f"write {example!r}")
         raise QuantityError(
             f"{value} has no unit", f"write {_with_unit(value, unit)!r} if that is what is meant"
         )
@@ -400,8 +402,11 @@ def _read_text(text: str, unit: str, example: str, wire: bool) -> float:
     if _COMMA.search(stripped):
         pointed = _COMMA.sub(r"\1.\2", stripped)
         once = len(_COMMA.findall(stripped)) == 1
+        joined = stripped.replace(",", "")
         hint = (
-            f"write {pointed!r} with a decimal point"
+            f"write {pointed!r} with a decimal point, or {joined!r} if the comma parts thousands"
+            if once and re.search(r"[1-9]\d{0,2},\d{3}(?!\d)", stripped)
+            else f"write {pointed!r} with a decimal point"
             if once
             else f"write it without commas, such as {example!r}"
         )

@@ -257,7 +257,11 @@ def _melting(
         lacks = "latent heat" if not metal.has("latent_heat") else "density"
         for name in ("specific_energy_to_melt_fully", "melted_fraction"):
             note.unknown(name, f"the set {metal.constants!r} has no {lacks} of {metal.row}")
-        if not any_molten:
+        if any_molten:
+            note.remark(
+                f"melting or molten: without the {lacks} of {metal.row} the two cannot be told apart; the state says melting"
+            )
+        else:
             note.unknowns.pop("melted_fraction", None)
         return None, None if any_molten else 0.0
     rho_m = note.formula(

@@ -101,8 +101,8 @@ _BOUNDS: tuple[Bound, ...] = (
 )
 
 
-def _front_bounds(low: float) -> tuple[Bound, Bound]:
-    """From its lower point on, the front lasts (0.9 − low)·T1, and the current stays above ``low`` of the peak."""
+def _front_bounds(low: float) -> tuple[Bound, ...]:
+    """From its lower point on, the front lasts (0.9 − low)·T1 and ends before the tail, and the current stays above ``low`` of the peak."""
     c1, c2 = low * (0.9 - low), low**2 * (0.9 - low)
     write = "write a shorter front time"
     return (
@@ -116,6 +116,12 @@ def _front_bounds(low: float) -> tuple[Bound, Bound]:
             ("front_time", "peak", "specific_energy"),
             f"{c2:.2g}*I^2*T1 <= W/R",
             lambda t, i, w: c2 * i**2 * t <= w * SLACK,
+            write,
+        ),
+        (
+            ("front_time", "half_value_time"),
+            "0.9*T1 <= T2",  # the tail passes its half after the front has passed 90 %, at 0.9·T1
+            lambda t1, t2: 0.9 * t1 <= t2 * SLACK,
             write,
         ),
     )

@@ -250,11 +250,14 @@ class Flash:
         timed = [s for s in self.strokes if s.waveform is not None and s.start is not None]
         if len(timed) < 2:
             return None
-        return Sum([cast(Waveform, s.waveform) for s in timed], [cast(Quantity, s.start) for s in timed])
+        return Sum([_signed(s) for s in timed], [cast(Quantity, s.start) for s in timed])
 
     @property
     def overlap(self) -> Quantity:
-        """What overlapping strokes add to the sum of their W/R (J/ohm): twice the integral of each product of currents."""
+        """What overlapping strokes add to the sum of their W/R (J/ohm): twice the integral of each product of currents.
+
+        Negative where strokes of opposite polarity overlap.
+        """
         if self.together is None:
             return 0.0
         alone = [
@@ -349,12 +352,18 @@ class Flash:
     def _missing(self, name: str, stroke: Stroke | None = None) -> MissingInput:
         if stroke is None:
             stroke = next((s for s in self.strokes if s.value(name) is None), self.strokes[0])
-        number = self.strokes.index(stroke) + 1
-        called = f"stroke {number}" + (f" ({stroke.name})" if stroke.name else "")
+        lacking = [n for n, s in enumerate(self.strokes, 1) if s is stroke or _lacks(s, name)]
+        if len(lacking) > 1:
+            called = f"strokes {', '.join(map(str, lacking[:-1]))} and {lacking[-1]} have"
+        else:
+            called = f"stroke {lacking[0]}" + (f" ({stroke.name})" if stroke.name else "") + " has"
         example = {"peak": "100 kA", "charge": "50 C", "specific_energy": "2.5 MJ/ohm", "duration": "0.5 s"}[
             name
         ]
-        return MissingInput(f"{called} has no {_WORDS[name]}", f"give it: {name} = {example!r}")
+        most = _most_energy(stroke) if name == "specific_energy" else None
+        if most is not None and most < 2.5e6:
+            example = f"{most / 2:.3g} J/ohm"
+        return MissingInput(f"{called} no {_WORDS[name]}", f"give it: {name} = {example!r}")
 
     def to_dict(self) -> dict[str, Any]:
         """Return it for JSON, in SI; what is not known is null."""
@@ -390,3 +399,26 @@ def _fold(join: Callable[[Any, Any], Any], values: list[Quantity]) -> Quantity:
     for value in values[1:]:
         total = join(total, value)
     return cast(Quantity, total if np.ndim(total) else float(total))
+
+
+def _signed(stroke: Stroke) -> Waveform:
+    """Return its waveform with the sign of its polarity, which a shape given in magnitudes does not carry."""
+    wave = cast(Waveform, stroke.waveform)
+    if stroke.polarity is None or np.all(np.sign(wave.peak) == stroke.polarity):
+        return wave
+    return wave * (np.sign(wave.peak) * stroke.polarity)
+
+
+def _lacks(stroke: Stroke, name: str) -> bool:
+    """Whether a value is neither given, nor integrated, nor (the W/R of a steady long stroke) to be computed."""
+    steady = stroke.is_long and stroke.charge is not None and stroke.duration is not None
+    return stroke.value(name) is None and not (name == "specific_energy" and steady)
+
+
+def _most_energy(stroke: Stroke) -> float | None:
+    """Return the bound I·Q of its W/R, with Q at most I·T where only the duration is known."""
+    peak, charge, duration = stroke.value("peak"), stroke.value("charge"), stroke.duration
+    if peak is None or np.ndim(peak) or (charge is None and duration is None):
+        return None
+    most: Any = charge if charge is not None else peak * cast(Quantity, duration)
+    return None if np.ndim(most) else abs(float(peak * most))

@@ -86,12 +86,12 @@ def _object_lines(result: ObjectResult) -> list[str]:
     title = f"{result.name} ({', '.join(described)})"
     lines = [title, "-" * min(len(title), WIDTH)]
     for sort, heading in (("size", "Sizes"), ("effect", "Effects"), ("reserve", "Reserve of the table")):
-        verdicts = [v for v in result.verdicts if v.sort == sort and (v.counts or sort == "reserve")]
+        verdicts = [v for v in result.verdicts if v.sort == sort and (v.counts or sort != "size")]
         if verdicts:
             lines.append(heading)
             for verdict in verdicts:
                 lines += _verdict_lines(verdict, result.governing)
-    others = [v for v in result.verdicts if not v.counts and v.sort != "reserve"]
+    others = [v for v in result.verdicts if not v.counts and v.sort == "size"]
     if others:
         lines.append("For comparison (does not decide)")
         for verdict in others:

@@ -6,6 +6,7 @@ import pytest
 from strikeenergy.errors import InputError, MissingInput, UnknownName
 from strikeenergy.lightning.flash import Flash, Stroke
 from strikeenergy.lightning.threats import COMPONENTS, levels, threat, threat_names
+from strikeenergy.lightning.waveform import Heidler, Rectangle
 from strikeenergy.sources import Standing
 
 
@@ -74,9 +75,9 @@ def test_long_stroke_without_energy_counts_as_a_rectangle():
 def test_what_is_missing_is_named():
     flash = Flash((Stroke(peak=1e5, name="first"), Stroke(charge=5.0)))
     for name, said in (
-        ("specific_energy", r"stroke 1 \(first\) has no specific energy"),
+        ("specific_energy", "strokes 1 and 2 have no specific energy"),
         ("peak", "stroke 2 has no peak"),
-        ("charge", "stroke 1"),
+        ("charge", r"stroke 1 \(first\) has no charge"),
     ):
         with pytest.raises(MissingInput, match=said):
             getattr(flash, name)
@@ -153,3 +154,21 @@ def test_level_identities():
             level
         )
         assert set(parts) == {*COMPONENTS, "flash"}
+
+
+def test_what_to_give_can_be_given():
+    # A stroke of 400 A and 0.5 s has at most 80 kJ/ohm: the example must stay below.
+    with pytest.raises(MissingInput, match="specific_energy = '4e\\+04 J/ohm'"):
+        _ = Flash((Stroke(peak=400.0, duration=0.5),)).specific_energy
+
+
+def test_strokes_of_opposite_polarity_take_from_each_other():
+    one = Stroke(waveform=Heidler(200e3, 19e-6, 485e-6), start=0.0, polarity=1)
+    other = {"waveform": Rectangle(400.0, 0.5), "start": 0.0}
+    alike = Flash((one, Stroke(**other, polarity=1)))
+    against = Flash((one, Stroke(**other, polarity=-1)))
+    # The cross term 2·∫ab dt is 2·400 A·∫a dt, as long as the rectangle outlasts the impulse.
+    cross = 2 * 400 * one.waveform.charge
+    assert alike.overlap == pytest.approx(cross, rel=1e-9)
+    assert against.overlap == pytest.approx(-cross, rel=1e-9)
+    assert against.specific_energy == pytest.approx(alike.specific_energy - 2 * cross, rel=1e-12)

@@ -292,3 +292,13 @@ def test_plugin_error_text():
     error = PluginError("p", "d", "list", "why")
     assert str(error) == "plugin p (d) failed to list: why"
     assert error.exit_code is ExitCode.PLUGIN
+
+
+def test_a_plugin_cannot_throw_out_a_built_in_kind_by_its_name(plugin):
+    # "aaa" sorts before "conductor": the built-in ones are loaded first all the same.
+    thief = GOOD.replace("{value}", "1.0").replace('"kite"', '"conductor"')
+    registry = load([*built_in(), plugin("aaa", thief)])
+    told = [str(failure) for failure in registry.failures]
+    assert any("kind conductor is already brought by plugin conductor" in text for text in told)
+    result = one(registry, kind="conductor", material="copper", section="50 mm**2")
+    assert "temperature_rise" in result.findings

@@ -8,6 +8,8 @@ import pytest
 from helpers import command, one, strokes
 from strikeenergy import estimate, make_case
 from strikeenergy.case import CaseError, read_case
+from strikeenergy.errors import InputError
+from strikeenergy.lightning import fit
 
 CASE = '[flash]\nthreat = "LPL I"\n'
 
@@ -294,3 +296,85 @@ def test_arrays_where_all_melt_stay_arrays():
     )
     assert np.isnan(found.temperature_rise).all()
     assert found.state.codes.tolist() == [2, 2]
+
+
+def melting(result):
+    return next(v for v in result.verdicts if v.check == "melting")
+
+
+def test_melting_that_is_not_judged_is_a_verdict_of_its_own():
+    given = {"kind": "conductor", "material": "copper", "section": "50 mm**2", "use": "down conductor"}
+    given["form"] = "solid round"
+    no_energy = one(**given, flash=strokes(peak="100 kA"))
+    assert (melting(no_energy).outcome, melting(no_energy).counts) == ("not covered", False)
+    assert "specific energy" in melting(no_energy).note
+    assert no_energy.outcome == "meets"
+    # A conductor that is already molten is no conductor that meets its checks.
+    molten = one(**given, start="1100 degC")
+    assert (melting(molten).outcome, melting(molten).counts) == ("not covered", True)
+    assert molten.outcome == "not covered"
+    assert melting(one(**given)).outcome == "meets"
+
+
+def test_melting_or_molten_is_told():
+    result = one(kind="conductor", material="stainless steel", section="4 mm**2")
+    assert result.findings["state"].value == "melting"
+    assert any("melting or molten" in text for text in result.remarks)
+
+
+def test_every_stroke_that_lacks_a_value_is_named():
+    flash = {"stroke": [{"peak": "10 kA"}, {"peak": "20 kA"}]}
+    result = one(kind="conductor", material="copper", section="50 mm**2", flash=flash)
+    assert any("strokes 1 and 2 have no specific energy" in text for text in result.remarks)
+
+
+def test_own_copper_is_told():
+    case = make_case(
+        {
+            "flash": {"threat": "LPL I"},
+            "materials": {"copper": {"resistivity": {"value": "18 nohm*m", "source": "certificate"}}},
+            "object": [{"kind": "conductor", "material": "copper", "section": "50 mm**2"}],
+        }
+    )
+    assert any("takes the place of the built-in" in text for text in estimate(case).objects[0].remarks)
+
+
+def test_a_comma_may_part_thousands():
+    said = refused(CASE + thing(section="1,000 mm**2"))
+    assert "'1.000 mm**2'" in said
+    assert "'1000 mm**2'" in said
+    assert "thousands" not in refused(CASE + thing(section="1,5 mm**2"))
+
+
+def test_a_bare_nan_is_not_given_a_unit():
+    said = refused(CASE + '[[object]]\nkind = "conductor"\nmaterial = "copper"\nsection = nan\n')
+    assert "not a finite number" in said
+    assert "nan mm" not in said
+
+
+def test_a_key_that_stands_twice_is_named():
+    said = refused(CASE + '[[object]]\nkind = "tree"\ndiameter = "1 m"\ndiameter = "2 m"\n')
+    assert "diameter stands twice" in said
+
+
+def test_strokes_apart_are_told():
+    first = {"shape": "heidler", "peak": "200 kA", "tau1": "19 us", "tau2": "485 us"}
+    second = {"shape": "rectangle", "current": "400 A", "duration": "0.5 s", "start": "0 s"}
+    case = make_case(
+        {
+            "flash": {"stroke": [first, second]},
+            "object": [{"kind": "sheet", "material": "copper", "thickness": "1 mm"}],
+        }
+    )
+    assert any("no start is given of stroke 1" in text for text in case.flash.remarks)
+
+
+def test_no_tail_ends_before_its_front():
+    with pytest.raises(InputError, match=r"0\.9\*T1 <= T2"):
+        fit(peak=1e5, front_time=1e-5, half_value_time=5e-6)
+
+
+def test_tolerances_need_a_specification():
+    done = command("record", "cases/mast-shot.csv", "--scale", "10 kA/V", "--peak", "20 kA")
+    assert done.returncode == 2
+    assert "--spec" in done.stderr
