@@ -19,7 +19,7 @@ from strikeenergy.errors import InputError, MissingInput, OutsideValidity, Plugi
 from strikeenergy.inputs import StruckObject
 from strikeenergy.lightning.flash import Flash
 from strikeenergy.lightning.ledger import Entry, Ledger, Sort, build_ledger
-from strikeenergy.limits import effect_verdict, reserves, size_verdicts
+from strikeenergy.limits import effect_verdict, not_judged, reserves, size_verdicts
 from strikeenergy.note import Note
 from strikeenergy.plugin import Bracket, Criterion, Effect, Finding, Findings, Words
 from strikeenergy.registry import Registry, kind_name, short_reason
@@ -28,8 +28,6 @@ from strikeenergy.sources import Standing, weakest
 from strikeenergy.version import __version__
 
 __all__ = ["estimate", "run_effect", "run_object"]
-
-_OUTSIDE = "no model covers it"
 
 
 def estimate(case: Case) -> Estimate:
@@ -84,16 +82,22 @@ def run_object(thing: StruckObject, flash: Flash, registry: Registry, standard: 
     result = ObjectResult(thing.name, kind_name(type(thing)), thing)
     own = flash.through(thing.share)
     ran: list[Effect] = []
+    unjudged: list[Verdict] = []
     for effect in registry.effects_of(type(thing)):
         note = Note(quiet=thing.is_array or flash.is_array)
-        if _guarded(
+        stopped = _guarded(
             result,
             effect,
             registry,
             lambda e=effect, n=note: result.findings.update(run_effect(e, thing, own, n)),
-        ):
+        )
+        if stopped is None:
             ran.append(effect)
             result.notes[effect.name] = note
+        elif isinstance(stopped, (MissingInput, OutsideValidity)):
+            # A missing input leaves the other checks as they are; what no model covers is no object that meets them.
+            counts = isinstance(stopped, OutsideValidity)
+            unjudged += [not_judged(c, str(stopped), counts) for c in effect.criteria]
         result.remarks += [text for text in note.remarks if text not in result.remarks]
     sizes: list[Verdict] = []
     try:
@@ -107,46 +111,17 @@ def run_object(thing: StruckObject, flash: Flash, registry: Registry, standard: 
     for effect in ran:
         for criterion in effect.criteria:
             _guarded(result, effect, registry, lambda c=criterion: _compare(result, c, own, sizes))
-    if not (thing.is_array or flash.is_array):
-        _tell_what_is_not_judged(result, registry)
+    result.verdicts += unjudged
     return result
-
-
-def _tell_what_is_not_judged(result: ObjectResult, registry: Registry) -> None:
-    """Add a verdict for each criterion that could not be held: whoever reads verdicts alone must see it.
-
-    It counts where no model covers the object; where only an input or a constant is missing it does not.
-    """
-    judged = {verdict.check for verdict in result.verdicts if verdict.sort == "effect"}
-    for effect in registry.effects_of(type(result.thing)):
-        for criterion in effect.criteria:
-            if criterion.check in judged or any(effect.name in str(f) for f in result.failures):
-                continue
-            found = result.findings.get(criterion.limit) or result.findings.get(criterion.value)
-            told = next((r for r in result.remarks if r.startswith(f"{effect.name} is not computed")), "")
-            result.verdicts.append(
-                Verdict(
-                    check=criterion.check,
-                    sort="effect",
-                    outcome="not covered",
-                    value=None,
-                    limit=None,
-                    unit=criterion.unit,
-                    margin=None,
-                    clause=criterion.clause,
-                    standard=criterion.source.citation.split(",")[0],
-                    counts=_OUTSIDE in told,
-                    note=told or (found.why_not if found else "") or "not known",
-                    standing="",
-                    sources=(str(criterion.source),),
-                )
-            )
 
 
 def _compare(result: ObjectResult, criterion: Criterion, flash: Flash, sizes: list[Verdict]) -> None:
     verdict = effect_verdict(criterion, result.findings, flash)
     if verdict is not None:
         result.verdicts.append(replace(verdict, rank=_rank(result, criterion)))
+    elif not (result.thing.is_array or flash.is_array):
+        found = result.findings.get(criterion.limit) or result.findings.get(criterion.value)
+        result.verdicts.append(not_judged(criterion, (found and found.why_not) or "not known", counts=False))
     result.verdicts += reserves(criterion, result.findings, sizes)
 
 
@@ -160,14 +135,16 @@ def _rank(result: ObjectResult, criterion: Criterion) -> float | None:
     return float(size) / float(needed)
 
 
-def _guarded(result: ObjectResult, effect: Effect, registry: Registry, run: Any) -> bool:
-    """Run a piece of a plugin's work; record what went wrong. Returns whether it ran."""
+def _guarded(result: ObjectResult, effect: Effect, registry: Registry, run: Any) -> BaseException | None:
+    """Run a piece of a plugin's work; record what went wrong, and return it. None: it ran."""
     try:
         run()
     except MissingInput as error:
         result.remarks.append(f"{effect.name} is not computed: {error}")
+        return error
     except OutsideValidity as error:
-        result.remarks.append(f"{effect.name} is not computed, {_OUTSIDE}: {error}")
+        result.remarks.append(f"{effect.name} is not computed, no model covers it: {error}")
+        return error
     except KeyboardInterrupt:
         raise
     except BaseException as error:  # whatever a plugin does, even sys.exit, the others go on
@@ -176,9 +153,8 @@ def _guarded(result: ObjectResult, effect: Effect, registry: Registry, run: Any)
         result.failures.append(
             PluginError(owner.name, owner.distribution, "compute", f"{effect.name}: {reason}")
         )
-    else:
-        return True
-    return False
+        return error
+    return None
 
 
 def run_effect(effect: Effect, thing: StruckObject, flash: Flash, note: Note) -> dict[str, FindingResult]:

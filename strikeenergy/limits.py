@@ -27,7 +27,7 @@ from strikeenergy.results import FindingResult, Verdict
 from strikeenergy.sources import Constant, weakest
 from strikeenergy.units import read
 
-__all__ = ["effect_verdict", "meets", "reserves", "size_verdicts"]
+__all__ = ["effect_verdict", "meets", "not_judged", "reserves", "size_verdicts"]
 
 _TOLERANCE = 1e-9
 
@@ -289,6 +289,25 @@ def effect_verdict(
         counts=True,
         note="",
         standing=found.standing if found else "",
+        sources=(str(criterion.source),),
+    )
+
+
+def not_judged(criterion: Criterion, why: str, counts: bool) -> Verdict:
+    """Say that a criterion could not be held: whoever reads verdicts alone must see it."""
+    return Verdict(
+        check=criterion.check,
+        sort="effect",
+        outcome="not covered",
+        value=None,
+        limit=None,
+        unit=criterion.unit,
+        margin=None,
+        clause=criterion.clause,
+        standard=criterion.source.citation.split(",")[0],
+        counts=counts,
+        note=why,
+        standing="",
         sources=(str(criterion.source),),
     )
 
