@@ -1,5 +1,8 @@
 """One million strokes through `heating` in one call, against the bare numpy formula on the same arrays."""
 
+import statistics
+import subprocess
+import sys
 import time
 
 import numpy as np
@@ -18,9 +21,8 @@ def cost(work):
     return time.process_time() - begin
 
 
-@pytest.mark.benchmark
-def test_a_million_strokes(capsys):
-    """Target: at most 1.5 times the bare formula. Both are measured in turn in one process, and the least of each counts."""
+def measured():
+    """Return the ratio in this process: both in turn, and the least of each, for what disturbs only ever adds."""
     w = np.random.default_rng(1).uniform(1e5, 1e7, COUNT)
     copper = Conductor(material="copper", section="16 mm**2")
     flash = Flash((Stroke(specific_energy=w),))
@@ -31,8 +33,24 @@ def test_a_million_strokes(capsys):
 
     np.testing.assert_allclose(heating(copper, flash).temperature_rise, bare(), rtol=1e-9)
     pairs = [(cost(lambda: heating(copper, flash)), cost(bare)) for _ in range(25)]
-    # The least of each: what disturbs a shared machine only ever adds.
-    ratio = min(ours for ours, _ in pairs) / min(theirs for _, theirs in pairs)
+    return min(ours for ours, _ in pairs) / min(theirs for _, theirs in pairs)
+
+
+@pytest.mark.benchmark
+def test_a_million_strokes(capsys):
+    """Target: at most 1.5 times the bare formula; the median of processes, as where memory lies shifts the ratio by 0.15."""
+    runs = [
+        subprocess.run([sys.executable, __file__], capture_output=True, text=True, check=True)
+        for _ in range(7)
+    ]
+    ratios = sorted(float(run.stdout) for run in runs)
+    ratio = statistics.median(ratios)
     with capsys.disabled():
-        print(f"\nheating of {COUNT} strokes: {ratio:.2f} times the bare numpy formula (target {TARGET})")
+        print(
+            f"\nheating of {COUNT} strokes: {ratio:.2f} ({ratios[0]:.2f} to {ratios[-1]:.2f}) times numpy (target {TARGET})"
+        )
     assert ratio <= TARGET
+
+
+if __name__ == "__main__":
+    print(measured())
